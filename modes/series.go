@@ -1,0 +1,30 @@
+package modes
+
+// Curve is a filament's centreline in one frame: points along it in µm, from the same end in
+// every frame, in order, roughly equally spaced (0.05 to 0.2 µm).
+type Curve struct {
+	XUm, YUm []float64
+}
+
+// Series is what the contours of one filament say: one entry per used frame, in order of time.
+type Series struct {
+	// TimesS is the time of each frame, s, ascending; gaps are allowed.
+	TimesS []float64
+	Curves []Curve
+	// NoiseUm3 is the noise density P of each frame's centreline, µm³: a beam mode of
+	// wavenumber q carries the error variance P·exp((q·PSFUm)²).
+	NoiseUm3 []float64
+	// PSFUm is the standard deviation of the line's profile, µm.
+	PSFUm float64
+	// LengthUm is the contour length, one for all frames.
+	LengthUm float64
+	// LengthSDUm is the scatter of the measured lengths over frames, and LengthSEUm the
+	// standard error predicted for one frame's.
+	LengthSDUm, LengthSEUm float64
+	// IntervalS is the nominal frame interval and ExposureS the exposure of a frame, s.
+	IntervalS, ExposureS float64
+	// TemperatureK is the sample's temperature, K.
+	TemperatureK float64
+	// FreeEnds says whether both ends were seen.
+	FreeEnds bool
+}

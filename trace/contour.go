@@ -1,0 +1,56 @@
+package trace
+
+// Point is a place on a contour, in µm: SUm along it from the end at s = 0, XUm and YUm in
+// image coordinates (origin at the centre of the top-left pixel, y down), SEUm the standard
+// error across the line.
+type Point struct {
+	SUm, XUm, YUm, SEUm float64
+}
+
+// End tells how an end of a filament was seen.
+type End string
+
+// The states of an end.
+const (
+	EndFree      End = "free"
+	EndBorder    End = "border"
+	EndDefocused End = "defocused"
+	EndHidden    End = "hidden"
+)
+
+// Contour is one filament in one frame. Points run from s = 0, about 0.1 µm apart. A contour
+// that was not found has no Points; one that must not be used has a Reason.
+type Contour struct {
+	Frame  int
+	Points []Point
+	// Reason says why the contour must not be used, empty where it may be.
+	Reason Reason
+	// LengthUm and its standard error.
+	LengthUm, LengthSEUm float64
+	// Ends at s = 0 and at s = LengthUm, with the standard error of their position along the line (µm).
+	Ends     [2]End
+	EndsSEUm [2]float64
+	// PhotonsPerUm and BackgroundPerUm2 are photoelectrons of the line per µm and of the
+	// background per µm².
+	PhotonsPerUm, BackgroundPerUm2 float64
+	// SNR is the peak line brightness above background over the background's standard
+	// deviation in one pixel.
+	SNR float64
+	// WidthUm is the standard deviation of the line's profile, pixel excluded.
+	WidthUm float64
+	// NoiseUm3 is the noise density P of the centreline: a mode of displacement with
+	// wavenumber q carries the error variance P·exp((q·WidthUm)²), in µm² for an
+	// amplitude normalised as ∫ψ² = 1 times µm, that is µm³.
+	NoiseUm3 float64
+}
+
+// Used reports whether the contour may be used.
+func (c Contour) Used() bool { return len(c.Points) > 1 && c.Reason == "" }
+
+// Filament is one filament followed through the frames First to Last. Contours has an entry
+// for every one of these frames, in order, also where the filament was not found.
+type Filament struct {
+	ID          int
+	First, Last int
+	Contours    []Contour
+}
