@@ -3,6 +3,7 @@ package chain
 import (
 	"fmt"
 	"math"
+	"sync"
 )
 
 // BeamRoot returns kL of bending mode n of a beam with two free ends: the n-th positive
@@ -12,6 +13,22 @@ func BeamRoot(n int) float64 {
 	if n < 1 {
 		panic(fmt.Sprintf("chain: beam mode %d, want 1 or more", n))
 	}
+	if roots := beamRoots(); n <= len(roots) {
+		return roots[n-1]
+	}
+	return solveBeamRoot(n)
+}
+
+// beamRoots holds the roots that callers ask for in loops over modes and points.
+var beamRoots = sync.OnceValue(func() []float64 {
+	roots := make([]float64, 512)
+	for i := range roots {
+		roots[i] = solveBeamRoot(i + 1)
+	}
+	return roots
+})
+
+func solveBeamRoot(n int) float64 {
 	// With x = (n+½)π + d the equation reads sin d = ∓1/cosh x; its iteration contracts by
 	// 1/cosh x, at most 0.02, per step.
 	base := (float64(n) + 0.5) * math.Pi
