@@ -1,0 +1,6 @@
+//go:build !cgo || nocv
+
+package ridge
+
+// active is the engine behind Compute.
+var active = plain
