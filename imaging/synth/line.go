@@ -96,17 +96,16 @@ func (st *stamp) add(im *Image, o Optics, xUm, yUm, photons float64) {
 		return
 	}
 	st.column = st.column[:0]
-	scale := 1 / (sigma * math.Sqrt2)
-	last := math.Erf((float64(x0) - 0.5 - x) * scale)
+	last := cumulative((float64(x0) - 0.5 - x) / sigma)
 	for i := x0; i <= x1; i++ {
-		next := math.Erf((float64(i) + 0.5 - x) * scale)
-		st.column = append(st.column, (next-last)/2)
+		next := cumulative((float64(i) + 0.5 - x) / sigma)
+		st.column = append(st.column, next-last)
 		last = next
 	}
-	last = math.Erf((float64(y0) - 0.5 - y) * scale)
+	last = cumulative((float64(y0) - 0.5 - y) / sigma)
 	for j := y0; j <= y1; j++ {
-		next := math.Erf((float64(j) + 0.5 - y) * scale)
-		share := photons * (next - last) / 2
+		next := cumulative((float64(j) + 0.5 - y) / sigma)
+		share := photons * (next - last)
 		last = next
 		row := im.Pix[j*im.Width+x0 : j*im.Width+x1+1]
 		for i, w := range st.column {
@@ -125,3 +124,35 @@ func span(x, sigma float64, size int) (first, last int) {
 	last = min(size-1, int(math.Floor(x+cutoff*sigma+0.5)))
 	return first, last
 }
+
+// cumulative returns the normal distribution function at z, within 2e-10: cubic
+// interpolation of a table, several times as fast as the error function.
+func cumulative(z float64) float64 {
+	u := (z + tableEnd) * tableSteps
+	if !(u > 0) {
+		return 0
+	}
+	i := int(u)
+	if i >= len(normal)-1 {
+		return 1
+	}
+	f := u - float64(i)
+	a, b := &normal[i], &normal[i+1]
+	d := b.value - a.value
+	return a.value + f*(a.slope+f*(3*d-2*a.slope-b.slope+f*(a.slope+b.slope-2*d)))
+}
+
+const (
+	tableEnd   = 7  // standard deviations
+	tableSteps = 64 // per standard deviation
+)
+
+// normal holds the distribution function and its slope per step.
+var normal = func() (table [2*tableEnd*tableSteps + 1]struct{ value, slope float64 }) {
+	for i := range table {
+		z := float64(i)/tableSteps - tableEnd
+		table[i].value = math.Erfc(-z/math.Sqrt2) / 2
+		table[i].slope = math.Exp(-z*z/2) / math.Sqrt(2*math.Pi) / tableSteps
+	}
+	return table
+}()

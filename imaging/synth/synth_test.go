@@ -25,6 +25,12 @@ func sum(im *Image) float64 {
 	return total
 }
 
+func TestCumulative(t *testing.T) {
+	for z := -9.0; z < 9; z += 0.00737 {
+		near(t, "Φ", cumulative(z), math.Erfc(-z/math.Sqrt2)/2, 2e-10)
+	}
+}
+
 func TestLineTotalPhotons(t *testing.T) {
 	var im Image
 	im.Reset(140, 90, 0)
