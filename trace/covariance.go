@@ -1,0 +1,159 @@
+package trace
+
+import (
+	"math"
+
+	"gonum.org/v1/gonum/blas/blas64"
+	"gonum.org/v1/gonum/lapack/lapack64"
+)
+
+// curve is the present centreline at arc length s of the reference path: a cubic through the nodes.
+func (f *fitter) curve(s float64) xy {
+	n := len(f.now)
+	x := min(max((s-f.at[0])/(f.at[1]-f.at[0]), 0), float64(n-1))
+	k := min(int(x), n-2)
+	t := x - float64(k)
+	a, b := f.now[max(k-1, 0)], f.now[k]
+	c, d := f.now[k+1], f.now[min(k+2, n-1)]
+	p := func(a, b, c, d float64) float64 {
+		return b + t*((c-a)/2+t*(a-2.5*b+2*c-d/2+t*((d-a)/2+1.5*(b-c))))
+	}
+	return xy{p(a.x, b.x, c.x, d.x), p(a.y, b.y, c.y, d.y)}
+}
+
+// stops are evenly spaced arc lengths of the reference path from end to end.
+func (f *fitter) stops() []float64 {
+	e0, e1 := f.parameters[f.endsIdx[0]], f.parameters[f.endsIdx[1]]
+	count := max(2, int(math.Round((e1-e0)/(nodeSpacing*f.width))))
+	out := make([]float64, count+1)
+	for i := range out {
+		out[i] = e0 + (e1-e0)*float64(i)/float64(count)
+	}
+	return out
+}
+
+// centreline is the present line from end to end.
+func (f *fitter) centreline() []xy {
+	at := f.stops()
+	out := make([]xy, len(at))
+	for i, s := range at {
+		out[i] = f.curve(s)
+	}
+	return out
+}
+
+// result reads the errors off the inverse of the normal equations at the fitted parameters.
+func (f *fitter) result(points []xy) (fitted, error) {
+	shapes := len(f.shapeIdx)
+	columns := shapes + 3 // shape, two ends, width
+	f.prior()
+	triangle, ok := f.factor()
+	if !ok {
+		return fitted{}, errFit
+	}
+	x := make([]float64, f.size*columns)
+	for k, i := range f.shapeIdx {
+		x[i*columns+k] = 1
+	}
+	for k, i := range f.endsIdx {
+		x[i*columns+shapes+k] = 1
+	}
+	for i, v := range f.widthColumn[:f.size] {
+		x[i*columns+shapes+2] = v
+	}
+	lapack64.Pbtrs(triangle, blas64.General{Rows: f.size, Cols: columns, Stride: columns, Data: x})
+	shapeCov := func(a, b int) float64 { return x[f.shapeIdx[a]*columns+b] }
+
+	r := fitted{points: points, width: f.width, pixels: len(f.pixels)}
+	r.chi2PerPixel = f.chi2 / float64(max(1, len(f.pixels)-f.size))
+	at := f.stops()
+	r.se = make([]float64, len(at))
+	quadratic := func(first int, w [4]float64) float64 {
+		v := 0.0
+		for a := range w {
+			for b := range w {
+				v += w[a] * w[b] * shapeCov(first+a, first+b)
+			}
+		}
+		return v
+	}
+	// The noise of the tangent makes a line longer: by half its variance, summed along it.
+	lengthening := 0.0
+	for i, s := range at {
+		r.se[i] = math.Sqrt(max(quadratic(f.shape.weights(s)), 0))
+		lengthening += quadratic(f.shape.slopes(s)) / 2
+	}
+	span := at[len(at)-1] - at[0]
+	lengthening *= span / float64(len(at))
+	r.length = arcLengths(points)[len(points)-1] - lengthening
+
+	endsVar := [2]float64{x[f.endsIdx[0]*columns+shapes], x[f.endsIdx[1]*columns+shapes+1]}
+	endsCov := x[f.endsIdx[0]*columns+shapes+1]
+	for k, v := range endsVar {
+		r.endsSE[k] = math.Sqrt(max(v, 0))
+	}
+	r.lengthSE = math.Sqrt(max(endsVar[0]+endsVar[1]-2*endsCov, 0))
+
+	remaining, step := f.widthSum, f.widthGradient
+	for i := 0; i < f.size; i++ {
+		remaining -= f.widthColumn[i] * x[i*columns+shapes+2]
+		step -= x[i*columns+shapes+2] * f.gradient[i]
+	}
+	if remaining > 0 {
+		r.widthStep, r.widthSE = step/remaining, 1/math.Sqrt(remaining)
+	}
+	r.noise = f.noiseDensity(at, shapeCov)
+
+	weight := 0.0
+	for j, w := range f.weight {
+		r.brightness += w * f.lightNow[j]
+		weight += w
+	}
+	r.brightness /= weight
+	for i := range f.pixels {
+		p := &f.pixels[i]
+		b := &f.underBasis[p.nearest]
+		r.background += p.below + b.w[0]*f.parameters[f.underIdx[b.first]] + b.w[1]*f.parameters[f.underIdx[b.first+1]]
+	}
+	r.background /= float64(len(f.pixels))
+	return r, nil
+}
+
+// noiseDensity projects the covariance on long waves: a wave of wavenumber q, normalised to
+// ∫ψ² = 1, has the variance P·exp(q²s²).
+func (f *fitter) noiseDensity(at []float64, cov func(a, b int) float64) float64 {
+	span := at[len(at)-1] - at[0]
+	step := at[1] - at[0]
+	shapes := len(f.shapeIdx)
+	sum, count := 0.0, 0
+	v := make([]float64, shapes)
+	for wave := 1; wave <= 4; wave++ {
+		q := 2 * math.Pi * float64(wave) / span
+		if wave > 1 && q*f.width > 0.6 {
+			break
+		}
+		for _, phase := range []float64{0, math.Pi / 2} {
+			clear(v)
+			for i, s := range at {
+				part := step
+				if i == 0 || i == len(at)-1 {
+					part /= 2
+				}
+				amplitude := math.Sqrt(2/span) * math.Cos(q*(s-at[0])+phase) * part
+				first, w := f.shape.weights(s)
+				for k := range w {
+					v[first+k] += amplitude * w[k]
+				}
+			}
+			p := 0.0
+			for a := range v {
+				for b := range v {
+					p += v[a] * v[b] * cov(a, b)
+				}
+			}
+			sum += p * math.Exp(-sq(q*f.width))
+			count++
+		}
+	}
+	return sum / float64(count)
+}

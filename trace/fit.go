@@ -1,0 +1,610 @@
+package trace
+
+import (
+	"errors"
+	"math"
+
+	"gonum.org/v1/gonum/blas"
+	"gonum.org/v1/gonum/blas/blas64"
+	"gonum.org/v1/gonum/lapack/lapack64"
+
+	"wend/imaging"
+)
+
+const (
+	// knotsPerWidth is the distance between the knots of the centreline in line widths.
+	knotsPerWidth = 4.0
+	// brightnessKnots and backgroundKnots are the distances between the knots of the line's
+	// brightness and of the background beside it, in line widths.
+	brightnessKnots = 8
+	backgroundKnots = 16
+	// nodeSpacing is the distance between the points whose Gaussians add up to the line, in
+	// line widths. The trapezoid sum of Gaussians h apart has a ripple of 2·exp(-2π²s²/h²): 1e-15 here.
+	nodeSpacing = 0.75
+	// reach is how far from the line pixels are used and how far a Gaussian is drawn, in line widths.
+	reach = 4.0
+)
+
+var (
+	errFaint  = errors.New("trace: too few pixels along the line")
+	errFit    = errors.New("trace: centreline fit did not converge")
+	errTooBig = errors.New("trace: centreline fit lost the line")
+)
+
+// fitted is a centreline in pixels with what the pixels say about it.
+type fitted struct {
+	points []xy      // about nodeSpacing line widths apart, from end to end
+	se     []float64 // standard error across the line at each point
+	// length is free of the lengthening by noise; lengthSE and endsSE are standard errors.
+	length, lengthSE float64
+	endsSE           [2]float64
+	brightness       float64 // counts per pixel of length, the mean
+	background       float64 // counts per pixel, the mean beside the line
+	noise            float64 // noise density, pixel³
+	width            float64 // line width used for the fit, pixel included
+	widthStep        float64 // change of width that the pixels ask for
+	widthSE          float64
+	chi2PerPixel     float64
+	pixels           int
+}
+
+// pixel is one pixel of the band around the line.
+type pixel struct {
+	x, y            float64
+	value           float64 // counts above the frame's background
+	below           float64 // the frame's background, counts
+	first, last     int32   // nodes within reach
+	nearest         int32
+	model, residual float64 // of the last iteration; model is counts above below
+	robust          float64
+}
+
+// fitter holds the memory of a fit, to be used again. Not for concurrent use.
+type fitter struct {
+	camera imaging.Camera
+	width  float64 // standard deviation of the line's profile, pixel included
+
+	nodes, normals []xy
+	at             []float64  // arc length of each node
+	now            []xy       // the nodes' present positions
+	weight         []float64  // share of each node's piece that lies between the ends
+	ends           [2]float64 // of the reference path
+	endPoint       [2]xy      // where the ends are now
+	endLight       [2]float64 // brightness there
+
+	shape     cubic
+	light     cubic
+	under     hats
+	shapeIdx  []int // index of each parameter in the normal equations, ordered along the line
+	lightIdx  []int
+	underIdx  []int
+	endsIdx   [2]int
+	size      int
+	bandwidth int
+
+	shapeBasis []basis4
+	lightBasis []basis4
+	underBasis []basis2
+
+	parameters    []float64
+	normal        []float64 // upper band, row-major, bandwidth+1 wide
+	gradient      []float64
+	widthColumn   []float64
+	widthSum      float64
+	widthGradient float64
+	chi2          float64
+	pixels        []pixel
+	nearest       []int32 // per image pixel, index into pixels + 1, for the current band
+	entries       []entry
+	shapeAcc      []float64
+	lightAcc      []float64
+	lightNow      []float64
+	trial         []float64
+}
+
+type basis4 struct {
+	first int
+	w     [4]float64
+}
+
+type basis2 struct {
+	first int
+	w     [2]float64
+}
+
+type entry struct {
+	index int
+	slope float64
+}
+
+// fit fits a centreline that starts from path. pixels (by index) that excluded names are left out;
+// excluded may be nil.
+func (f *fitter) fit(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy) (fitted, error) {
+	const passes = 3
+	length := arcLengths(path)[len(path)-1]
+	ends := [2]float64{0, length}
+	for pass := 0; ; pass++ {
+		if err := f.prepare(frame, background, excluded, path, ends); err != nil {
+			return fitted{}, err
+		}
+		moved, err := f.iterate(pass)
+		if err != nil {
+			return fitted{}, err
+		}
+		path = f.centreline()
+		ends = [2]float64{0, arcLengths(path)[len(path)-1]}
+		if moved < 0.3*f.width || pass == passes-1 {
+			break
+		}
+	}
+	return f.result(path)
+}
+
+// prepare lays the nodes, the bases, the parameters and the band of pixels along path.
+func (f *fitter) prepare(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy, ends [2]float64) error {
+	step := nodeSpacing * f.width
+	margin := reach * f.width
+	span := ends[1] - ends[0]
+	if !(span > 2*f.width) {
+		return errTooBig
+	}
+	inner := max(2, int(math.Round(span/step)))
+	step = span / float64(inner)
+	outer := int(math.Ceil(margin / step))
+	count := inner + 1 + 2*outer
+	from := ends[0] - float64(outer)*step
+	f.nodes = resample(path, from, step, count)
+	f.ends = ends
+	f.at = resize(f.at, count)
+	f.normals = resizeXY(f.normals, count)
+	f.now = append(f.now[:0], f.nodes...)
+	f.weight = resize(f.weight, count)
+	for j := range f.nodes {
+		f.at[j] = from + float64(j)*step
+		a, b := f.nodes[max(j-1, 0)], f.nodes[min(j+1, count-1)]
+		t := b.minus(a).unit()
+		f.normals[j] = xy{-t.y, t.x}
+	}
+	f.layBases()
+	return f.layPixels(frame, background, excluded)
+}
+
+func (f *fitter) layBases() {
+	e0, e1 := f.ends[0], f.ends[1]
+	f.shape = cubicOver(e0, e1, knotsPerWidth*f.width)
+	f.light = cubicOver(e0, e1, brightnessKnots*f.width)
+	f.under = hatsOver(e0, e1, backgroundKnots*f.width)
+	// Parameters in the order of their place along the line make the normal equations banded.
+	type place struct {
+		at   float64
+		slot *int
+	}
+	f.shapeIdx = resizeInt(f.shapeIdx, f.shape.size())
+	f.lightIdx = resizeInt(f.lightIdx, f.light.size())
+	f.underIdx = resizeInt(f.underIdx, f.under.size())
+	f.size = f.shape.size() + f.light.size() + f.under.size() + 2
+	places := make([]place, 0, f.size)
+	places = append(places, place{e0, &f.endsIdx[0]}, place{e1, &f.endsIdx[1]})
+	for k := range f.shapeIdx {
+		places = append(places, place{f.shape.centre(k), &f.shapeIdx[k]})
+	}
+	for k := range f.lightIdx {
+		places = append(places, place{f.light.centre(k), &f.lightIdx[k]})
+	}
+	for k := range f.underIdx {
+		places = append(places, place{f.under.centre(k), &f.underIdx[k]})
+	}
+	for i := 1; i < len(places); i++ { // nearly sorted already
+		for j := i; j > 0 && places[j].at < places[j-1].at; j-- {
+			places[j], places[j-1] = places[j-1], places[j]
+		}
+	}
+	for i, p := range places {
+		*p.slot = i
+	}
+	n := len(f.at)
+	if cap(f.shapeBasis) < n {
+		f.shapeBasis, f.lightBasis, f.underBasis = make([]basis4, n), make([]basis4, n), make([]basis2, n)
+	}
+	f.shapeBasis, f.lightBasis, f.underBasis = f.shapeBasis[:n], f.lightBasis[:n], f.underBasis[:n]
+	for j, s := range f.at {
+		b := &f.shapeBasis[j]
+		b.first, b.w = f.shape.weights(s)
+		l := &f.lightBasis[j]
+		l.first, l.w = f.light.weights(min(max(s, e0), e1))
+		u := &f.underBasis[j]
+		u.first, u.w = f.under.weights(s)
+	}
+	f.parameters = resize(f.parameters, f.size)
+	clear(f.parameters)
+	f.parameters[f.endsIdx[0]], f.parameters[f.endsIdx[1]] = e0, e1
+}
+
+// layPixels gathers the pixels within reach of the nodes and the nodes within reach of each.
+func (f *fitter) layPixels(frame, background imaging.Frame, excluded func(pixel int) bool) error {
+	r := reach * f.width
+	w, h := frame.Width, frame.Height
+	f.nearest = resizeInt32(f.nearest, w*h)
+	f.pixels = f.pixels[:0]
+	for j, c := range f.nodes {
+		x0, x1 := max(0, int(math.Ceil(c.x-r))), min(w-1, int(math.Floor(c.x+r)))
+		y0, y1 := max(0, int(math.Ceil(c.y-r))), min(h-1, int(math.Floor(c.y+r)))
+		for y := y0; y <= y1; y++ {
+			dy := float64(y) - c.y
+			for x := x0; x <= x1; x++ {
+				dx := float64(x) - c.x
+				d2 := dx*dx + dy*dy
+				if d2 > r*r {
+					continue
+				}
+				i := y*w + x
+				if k := f.nearest[i]; k > 0 {
+					p := &f.pixels[k-1]
+					p.last = int32(j)
+					if n := f.nodes[p.nearest]; d2 < sq(p.x-n.x)+sq(p.y-n.y) {
+						p.nearest = int32(j)
+					}
+					continue
+				}
+				if excluded != nil && excluded(i) {
+					continue
+				}
+				below := float64(background.Pix[i])
+				f.pixels = append(f.pixels, pixel{x: float64(x), y: float64(y),
+					value: float64(frame.Pix[i]) - below, below: below,
+					first: int32(j), last: int32(j), nearest: int32(j), robust: 1})
+				f.nearest[i] = int32(len(f.pixels))
+			}
+		}
+	}
+	for i := range f.pixels {
+		p := &f.pixels[i]
+		f.nearest[int(p.y)*w+int(p.x)] = 0
+	}
+	if len(f.pixels) < 2*f.size {
+		return errFaint
+	}
+	f.bandwidth = 0
+	for i := range f.pixels {
+		p := &f.pixels[i]
+		// A pixel beside a fold sees two distant stretches of the line; it belongs to the nearer.
+		limit := int32(math.Ceil(3*reach/nodeSpacing)) + 1
+		p.first, p.last = max(p.first, p.nearest-limit), min(p.last, p.nearest+limit)
+		lo, hi := f.touched(int(p.first), int(p.last))
+		f.bandwidth = max(f.bandwidth, hi-lo)
+	}
+	// Neighbouring shape coefficients are tied by the covariance along the line.
+	for k := range f.shapeIdx {
+		if k+3 < len(f.shapeIdx) {
+			f.bandwidth = max(f.bandwidth, f.shapeIdx[k+3]-f.shapeIdx[k])
+		}
+	}
+	f.bandwidth = min(f.bandwidth, f.size-1)
+	return nil
+}
+
+// touched returns the lowest and highest parameter that the nodes first to last depend on.
+func (f *fitter) touched(first, last int) (lo, hi int) {
+	lo = min(f.shapeIdx[f.shapeBasis[first].first], f.lightIdx[f.lightBasis[first].first],
+		f.underIdx[f.underBasis[first].first])
+	hi = max(f.shapeIdx[f.shapeBasis[last].first+3], f.lightIdx[f.lightBasis[last].first+3],
+		f.underIdx[f.underBasis[last].first+1])
+	if f.at[first] < f.ends[0]+2*f.width {
+		lo = min(lo, f.endsIdx[0])
+		hi = max(hi, f.endsIdx[0])
+	}
+	if f.at[last] > f.ends[1]-2*f.width {
+		hi = max(hi, f.endsIdx[1])
+		lo = min(lo, f.endsIdx[1])
+	}
+	return lo, hi
+}
+
+// startLight sets the brightness parameters from the pixels, as if the line lay where the path is.
+func (f *fitter) startLight() {
+	// A strip across a line of brightness λ holds λ counts per pixel of length.
+	var sum, model float64
+	norm := 1 / (math.Sqrt(2*math.Pi) * f.width)
+	for i := range f.pixels {
+		p := &f.pixels[i]
+		if s := f.at[p.nearest]; s < f.ends[0] || s > f.ends[1] {
+			continue
+		}
+		n := f.nodes[p.nearest]
+		g := norm * math.Exp(-(sq(p.x-n.x)+sq(p.y-n.y))/(2*f.width*f.width))
+		sum += p.value * g
+		model += g * g
+	}
+	start := 1e-3
+	if model > 0 && sum > 0 {
+		start = sum / model
+	}
+	for _, i := range f.lightIdx {
+		f.parameters[i] = start
+	}
+}
+
+// iterate runs damped Gauss-Newton steps until nothing moves, and returns the largest
+// displacement from the path.
+func (f *fitter) iterate(pass int) (moved float64, err error) {
+	const steps = 12
+	f.startLight()
+	f.place()
+	f.accumulate(false)
+	last := f.chi2
+	f.trial = resize(f.trial, f.size)
+	for step := 0; step < steps; step++ {
+		f.prior()
+		delta := append(f.trial[:0], f.gradient[:f.size]...)
+		if !f.solve(delta) {
+			return 0, errFit
+		}
+		// No step may throw the line off its light.
+		limit := f.width
+		scale := 1.0
+		for _, i := range f.shapeIdx {
+			if a := math.Abs(delta[i]); a*scale > limit {
+				scale = limit / a
+			}
+		}
+		for _, i := range f.endsIdx {
+			if a := math.Abs(delta[i]); a*scale > limit {
+				scale = limit / a
+			}
+		}
+		before := append([]float64(nil), f.parameters...)
+		for halving := 0; ; halving++ {
+			for i := range delta {
+				f.parameters[i] = before[i] + scale*delta[i]
+			}
+			f.place()
+			f.accumulate(step >= 1 || pass > 0)
+			if math.IsNaN(f.chi2) {
+				return 0, errFit
+			}
+			if f.chi2 <= last*1.02 || step < 2 || halving == 4 {
+				break
+			}
+			scale /= 2
+		}
+		last = f.chi2
+		change := 0.0
+		for _, i := range f.shapeIdx {
+			change = max(change, math.Abs(scale*delta[i]))
+		}
+		for _, i := range f.endsIdx {
+			change = max(change, 0.3*math.Abs(scale*delta[i]))
+		}
+		if step >= 1 && change < 0.01*f.width {
+			break
+		}
+	}
+	for _, i := range f.shapeIdx {
+		moved = max(moved, math.Abs(f.parameters[i]))
+	}
+	if !(f.parameters[f.endsIdx[1]]-f.parameters[f.endsIdx[0]] > 3*f.width) {
+		return 0, errTooBig
+	}
+	return moved, nil
+}
+
+// place puts the nodes where the parameters say.
+func (f *fitter) place() {
+	e0, e1 := f.parameters[f.endsIdx[0]], f.parameters[f.endsIdx[1]]
+	step := f.at[1] - f.at[0]
+	f.lightNow = resize(f.lightNow, len(f.at))
+	for j, s := range f.at {
+		u := 0.0
+		b := &f.shapeBasis[j]
+		for i, w := range b.w {
+			u += w * f.parameters[f.shapeIdx[b.first+i]]
+		}
+		f.now[j] = f.nodes[j].plus(f.normals[j].times(u))
+		l := 0.0
+		c := &f.lightBasis[j]
+		for i, w := range c.w {
+			l += w * f.parameters[f.lightIdx[c.first+i]]
+		}
+		f.lightNow[j] = l
+		left := min(max((s-e0)/step+0.5, 0), 1)
+		right := min(max((e1-s)/step+0.5, 0), 1)
+		f.weight[j] = left * right
+	}
+	for k, s := range [2]float64{e0, e1} {
+		f.endPoint[k] = f.curve(s)
+		x := int(math.Round((s - f.at[0]) / step))
+		f.endLight[k] = max(f.lightNow[min(max(x, 0), len(f.lightNow)-1)], 0)
+	}
+}
+
+// accumulate builds the normal equations and chi² at the present parameters.
+func (f *fitter) accumulate(robust bool) {
+	n, bw := f.size, f.bandwidth
+	f.normal = resize(f.normal, n*(bw+1))
+	f.gradient = resize(f.gradient, n)
+	f.widthColumn = resize(f.widthColumn, n)
+	f.shapeAcc = resize(f.shapeAcc, f.shape.size())
+	f.lightAcc = resize(f.lightAcc, f.light.size())
+	clear(f.normal)
+	clear(f.gradient)
+	clear(f.widthColumn)
+	f.widthSum, f.widthGradient, f.chi2 = 0, 0, 0
+	step := f.at[1] - f.at[0]
+	s2 := f.width * f.width
+	norm := step / (2 * math.Pi * s2)
+	cut := sq(reach * f.width * 1.1)
+	for i := range f.pixels {
+		p := &f.pixels[i]
+		model, widthSlope := 0.0, 0.0
+		var endSlope [2]float64
+		shapeLo, shapeHi := f.shapeBasis[p.first].first, f.shapeBasis[p.last].first+3
+		lightLo, lightHi := f.lightBasis[p.first].first, f.lightBasis[p.last].first+3
+		clear(f.shapeAcc[shapeLo : shapeHi+1])
+		clear(f.lightAcc[lightLo : lightHi+1])
+		for j := int(p.first); j <= int(p.last); j++ {
+			w := f.weight[j]
+			if w == 0 {
+				continue
+			}
+			dx, dy := p.x-f.now[j].x, p.y-f.now[j].y
+			d2 := dx*dx + dy*dy
+			if d2 > cut {
+				continue
+			}
+			g := norm * math.Exp(-d2/(2*s2))
+			light := f.lightNow[j]
+			g *= w
+			lb := &f.lightBasis[j]
+			acc := f.lightAcc[lb.first : lb.first+4 : lb.first+4]
+			acc[0] += g * lb.w[0]
+			acc[1] += g * lb.w[1]
+			acc[2] += g * lb.w[2]
+			acc[3] += g * lb.w[3]
+			g *= light
+			model += g
+			widthSlope += g * (d2/s2 - 2)
+			t := g * (dx*f.normals[j].x + dy*f.normals[j].y) / s2
+			sb := &f.shapeBasis[j]
+			acc = f.shapeAcc[sb.first : sb.first+4 : sb.first+4]
+			acc[0] += t * sb.w[0]
+			acc[1] += t * sb.w[1]
+			acc[2] += t * sb.w[2]
+			acc[3] += t * sb.w[3]
+		}
+		widthSlope /= f.width
+		for k, c := range f.endPoint {
+			// Moving an end adds or takes away a piece of line there.
+			if d2 := sq(p.x-c.x) + sq(p.y-c.y); d2 < cut {
+				endSlope[k] = float64(2*k-1) * f.endLight[k] * norm / step * math.Exp(-d2/(2*s2))
+			}
+		}
+		ub := &f.underBasis[p.nearest]
+		under := ub.w[0]*f.parameters[f.underIdx[ub.first]] + ub.w[1]*f.parameters[f.underIdx[ub.first+1]]
+		residual := p.value - under - model
+		weight := 1 / f.camera.Variance(p.below+under+max(model, 0))
+		p.robust = 1
+		if robust {
+			if z := math.Abs(residual) * math.Sqrt(weight); z > 5 {
+				p.robust = sq(5 / z)
+			}
+		}
+		weight *= p.robust
+		p.model, p.residual = under+model, residual
+		f.chi2 += weight * residual * residual
+
+		list := f.entries[:0]
+		for k := shapeLo; k <= shapeHi; k++ {
+			if v := f.shapeAcc[k]; v != 0 {
+				list = append(list, entry{f.shapeIdx[k], v})
+			}
+		}
+		for k := lightLo; k <= lightHi; k++ {
+			if v := f.lightAcc[k]; v != 0 {
+				list = append(list, entry{f.lightIdx[k], v})
+			}
+		}
+		list = append(list, entry{f.underIdx[ub.first], ub.w[0]}, entry{f.underIdx[ub.first+1], ub.w[1]})
+		for k := range endSlope {
+			if endSlope[k] != 0 {
+				list = append(list, entry{f.endsIdx[k], endSlope[k]})
+			}
+		}
+		f.entries = list
+		for a := range list {
+			ea := list[a]
+			v := weight * ea.slope
+			f.gradient[ea.index] += v * residual
+			f.widthColumn[ea.index] += v * widthSlope
+			for b := a; b < len(list); b++ {
+				eb := list[b]
+				lo, d := ea.index, eb.index-ea.index
+				if d < 0 {
+					lo, d = eb.index, -d
+				}
+				if d <= bw {
+					f.normal[lo*(bw+1)+d] += v * eb.slope
+				}
+			}
+		}
+		f.widthSum += weight * widthSlope * widthSlope
+		f.widthGradient += weight * widthSlope * residual
+	}
+}
+
+// prior adds information so weak that it only decides what the pixels leave open (a dark gap,
+// an end without light): shape within 3 widths, brightness within a quarter of its mean.
+func (f *fitter) prior() {
+	bw := f.bandwidth
+	add := func(i int, sd, value float64) {
+		f.normal[i*(bw+1)] += 1 / (sd * sd)
+		f.gradient[i] -= value / (sd * sd)
+	}
+	mean := 0.0
+	for _, i := range f.lightIdx {
+		mean += f.parameters[i]
+	}
+	mean = max(math.Abs(mean)/float64(len(f.lightIdx)), 1e-6)
+	for _, i := range f.shapeIdx {
+		add(i, 3*f.width, f.parameters[i])
+	}
+	for _, i := range f.lightIdx {
+		add(i, 0.25*mean, f.parameters[i]-mean)
+	}
+	for _, i := range f.underIdx {
+		add(i, 10*mean/f.width, f.parameters[i])
+	}
+	for k, i := range f.endsIdx {
+		add(i, 3*f.width, f.parameters[i]-f.ends[k])
+	}
+}
+
+// factor replaces the normal equations by their Cholesky factor.
+func (f *fitter) factor() (blas64.TriangularBand, bool) {
+	return lapack64.Pbtrf(blas64.SymmetricBand{Uplo: blas.Upper, N: f.size, K: f.bandwidth,
+		Stride: f.bandwidth + 1, Data: f.normal[:f.size*(f.bandwidth+1)]})
+}
+
+// solve solves the normal equations for right-hand side b, in place; they are factored in place.
+func (f *fitter) solve(b []float64) bool {
+	t, ok := f.factor()
+	if !ok {
+		return false
+	}
+	lapack64.Pbtrs(t, blas64.General{Rows: f.size, Cols: 1, Stride: 1, Data: b})
+	for _, v := range b {
+		if math.IsNaN(v) || math.IsInf(v, 0) {
+			return false
+		}
+	}
+	return true
+}
+
+func sq(x float64) float64 { return x * x }
+
+func resize(s []float64, n int) []float64 {
+	if cap(s) < n {
+		return make([]float64, n)
+	}
+	return s[:n]
+}
+
+func resizeInt(s []int, n int) []int {
+	if cap(s) < n {
+		return make([]int, n)
+	}
+	return s[:n]
+}
+
+func resizeInt32(s []int32, n int) []int32 {
+	if cap(s) < n {
+		return make([]int32, n)
+	}
+	return s[:n]
+}
+
+func resizeXY(s []xy, n int) []xy {
+	if cap(s) < n {
+		return make([]xy, n)
+	}
+	return s[:n]
+}

@@ -1,0 +1,117 @@
+package trace
+
+import (
+	"errors"
+	"fmt"
+	"math"
+
+	"wend/imaging"
+)
+
+// Source gives the frames of one movie. ReadFrame must be safe for concurrent use.
+type Source interface {
+	Frames() int
+	ReadFrame(t int, dst *imaging.Frame) error
+}
+
+// ErrNoFrames is returned where a movie has no frame to trace.
+var ErrNoFrames = errors.New("trace: the movie has no frames")
+
+// CameraHint holds what is known of the camera beforehand; NaN for what is not.
+type CameraHint struct {
+	GainCounts, OffsetCounts float64
+	MaxCount                 float64
+}
+
+const (
+	surveyFrames = 12
+	// firstWidthPx is the line width that a survey starts from: a well sampled image has
+	// between one and two pixels per standard deviation of its PSF (common practice).
+	firstWidthPx = 1.4
+)
+
+// Survey measures the line width and the camera noise on a dozen frames spread over the movie, in
+// rounds: trace with what is known, then take the width that the pixels ask for, and the noise
+// from the residuals of the fits against the fitted light. Both need no filament to stand still.
+// first and last bound the frames, both included.
+func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions, error) {
+	if last < first {
+		return Conditions{}, ErrNoFrames
+	}
+	count := min(surveyFrames, last-first+1)
+	frames := make([]imaging.Frame, count)
+	var noise, level []float64
+	for i := range frames {
+		t := first
+		if count > 1 {
+			t += i * (last - first) / (count - 1)
+		}
+		if err := src.ReadFrame(t, &frames[i]); err != nil {
+			return Conditions{}, fmt.Errorf("trace: survey: %w", err)
+		}
+		var back imaging.Frame
+		imaging.EstimateBackground(frames[i], backgroundBlockPx, &back)
+		noise = append(noise, imaging.NoiseStd(frames[i], back))
+		mean := 0.0
+		for _, v := range back.Pix {
+			mean += float64(v)
+		}
+		level = append(level, mean/float64(len(back.Pix)))
+	}
+	c := Conditions{WidthPx: firstWidthPx, MaxCount: hint.MaxCount}
+	// Until the residuals have spoken the noise is taken as the background's everywhere.
+	c.Camera = imaging.Camera{GainCounts: 1e-6, OffsetCounts: 0, ReadVariance: max(sq(median(noise)), 1.0/12)}
+	var samples imaging.NoiseSamples
+	lines := 0
+	for round := range 4 {
+		tracer, err := NewTracer(o, c)
+		if err != nil {
+			return Conditions{}, err
+		}
+		samples = imaging.NoiseSamples{}
+		var widths []float64
+		tracer.observe = func(f *fitter, r fitted) {
+			if r.widthSE > 0 && r.widthSE < 0.3*f.width {
+				widths = append(widths, min(max(f.width+r.widthStep, f.width*0.6), f.width*1.6))
+			}
+			f.residuals(&samples)
+		}
+		for i := range frames {
+			if _, err := tracer.Frame(frames[i], i); err != nil {
+				return Conditions{}, err
+			}
+		}
+		lines = len(widths)
+		if lines > 0 {
+			c.WidthPx = min(max(median(widths), 0.7), 8)
+		}
+		if round > 0 || lines > 0 {
+			c.Camera = imaging.FitCamera(samples, hint.GainCounts, hint.OffsetCounts, median(level), median(noise))
+		}
+	}
+	if lines == 0 {
+		c.WidthPx = firstWidthPx
+		c.Camera = imaging.FitCamera(imaging.NoiseSamples{}, hint.GainCounts, hint.OffsetCounts, median(level), median(noise))
+	}
+	if math.IsNaN(c.MaxCount) || c.MaxCount == 0 {
+		c.MaxCount = math.Inf(1)
+	}
+	return c, nil
+}
+
+// residuals adds the fit's residuals to samples: the fitted counts of every pixel, and the squared
+// residual scaled up by what the fit itself has taken out of it (its leverage, spread evenly).
+func (f *fitter) residuals(samples *imaging.NoiseSamples) {
+	n := len(f.pixels)
+	if n <= 2*f.size {
+		return
+	}
+	scale := float64(n) / float64(n-f.size)
+	for i := range f.pixels {
+		p := &f.pixels[i]
+		if p.robust < 1 {
+			continue
+		}
+		samples.Add(p.below+p.model, p.residual*p.residual*scale)
+	}
+}
