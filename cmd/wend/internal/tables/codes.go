@@ -1,0 +1,92 @@
+package tables
+
+// Kind says in which column a code stands.
+type Kind string
+
+// The kinds of code.
+const (
+	KindFrame       Kind = "frame reason" // reason in frames.csv
+	KindMode        Kind = "mode reason"  // reason in modes.csv
+	KindFlag        Kind = "flag"         // flags in filaments.csv
+	KindMethod      Kind = "method"       // method in estimates.csv, lp_from in filaments.csv
+	KindThermal     Kind = "thermal"      // thermal in filaments.csv
+	KindConfinement Kind = "confinement"  // confinement in filaments.csv
+	KindEnd         Kind = "end"          // end_0 and end_1
+)
+
+// Code is a short stable code with what it means and, where something can be done, what to do.
+type Code struct {
+	Kind    Kind
+	Code    string
+	Meaning string
+}
+
+// Codes returns every code that may stand in the tables, by kind, in a fixed order.
+func Codes() []Code { return append([]Code(nil), codes...) }
+
+// Meaning returns the sentence for a code of a kind, and whether there is one.
+func Meaning(kind Kind, code string) (string, bool) {
+	for _, c := range codes {
+		if c.Kind == kind && c.Code == code {
+			return c.Meaning, true
+		}
+	}
+	return "", false
+}
+
+var codes = []Code{
+	{KindFrame, "border", "The filament touches the border of the image, so that its end is not seen; use a larger field or centre the filament."},
+	{KindFrame, "length", "The traced length jumped away from the filament's own: part of it left the focus or the trace ran on; look at the frame before you use it."},
+	{KindFrame, "crossing", "The filament crosses or touches itself or another one; dilute the sample if this is frequent."},
+	{KindFrame, "faint", "The filament is too dim against the noise to be traced; use more light, a longer exposure or fewer frames before it bleaches."},
+	{KindFrame, "ambiguous", "Several traces are equally near to where the filament was before, and none was chosen; shorten the frame interval or dilute the sample."},
+	{KindFrame, "missing", "The filament was not found in this frame, though before and after it: mostly it left the focus for a moment."},
+	{KindFrame, "fit", "The fit of the centreline did not converge; mostly the line is too dim, too short or too sharply bent there."},
+	{KindFrame, "branched", "The bright line branches or closes on itself, so that there is no single path along it; two filaments may lie on top of each other."},
+	{KindFrame, "saturated", "Pixels of the filament are at the camera's limit, which flattens the profile and shifts the centreline; lower the exposure or the gain."},
+
+	{KindMode, "noise", "The localisation noise is too large against this mode's thermal variance; more light brings more modes in."},
+	{KindMode, "blur", "The mode relaxes within the exposure, so that most of its variance is averaged away; use a shorter exposure."},
+	{KindMode, "resolution", "The wavelength comes near the width of the blurred line or the spacing of the points, which this microscope cannot resolve."},
+	{KindMode, "few_shapes", "The mode went through too few independent shapes in the movie for its variance to say anything; record for longer."},
+	{KindMode, "lower_bound", "The variance is not larger than the noise, so that this mode gives only a lower bound of the persistence length."},
+	{KindMode, "ends", "An end of the filament was not seen, and the theory of free ends does not hold for this mode."},
+
+	{KindFlag, "lower_bound", "The undulations are too small, or too few independent ones were seen, for an upper limit: only a lower bound of the persistence length is given; a longer filament, more light or a longer movie helps."},
+	{KindFlag, "pinned", "The variance along the filament is unlike that of a free one, as if it stuck to the surface somewhere; leave it out, and passivate the chamber better."},
+	{KindFlag, "changing", "The first and the second half of the movie disagree: the filament stuck, broke, bundled or drifted out of focus; analyse the good part with --frames."},
+	{KindFlag, "rolling", "A filament with a bend of its own turned over and shows mirrored shapes, which widens the variance of the low modes; use a thinner chamber."},
+	{KindFlag, "projection", "The chamber is deep enough for tilt and out-of-plane bending to matter, so that the planar theory gives too small a persistence length; use a thinner chamber or longer filaments."},
+	{KindFlag, "processed", "The noise of neighbouring pixels is correlated: the images were denoised, resampled or compressed with loss, so that the errors cannot be trusted; go back to the raw files."},
+	{KindFlag, "few_shapes", "The filament went through few independent shapes, so that the interval is wide however many frames there are; record for longer, not faster."},
+	{KindFlag, "few_frames", "Too few frames could be used for an estimate; see the reasons in frames.csv."},
+	{KindFlag, "short", "The filament is short against the optical resolution, so that at most a mode or two can be measured; take longer filaments."},
+	{KindFlag, "border", "The filament touches the border of the image, so that an end is not seen and the theory of free ends does not hold; centre the filament."},
+	{KindFlag, "ends", "An end of the filament is not seen well, so that its length and the lowest modes are uncertain."},
+	{KindFlag, "not_thermal", "The fluctuations are unlike thermal ones (spectrum, distribution or time course), so that no persistence length is given; look for flow, drift, motors or sticking."},
+	{KindFlag, "no_blur_correction", "The exposure was not given or was set to 0, so that no correction for motion during the exposure was made and the persistence length may be too large."},
+	{KindFlag, "large_bends", "The filament bends so far that the small-angle dynamics no longer hold well; the equilibrium estimates do."},
+	{KindFlag, "drag", "The fitted drag is far from that of a filament in water; the frame interval, the exposure or the thermal assumption may be wrong."},
+	{KindFlag, "fit", "A fit did not converge, and its estimate is left out."},
+
+	{KindMethod, "likelihood", "Exact likelihood of the bending modes over time, with exposure, noise, drag and intrinsic shape taken into account: the recommended estimate."},
+	{KindMethod, "modes", "Variances of the cosine modes of the tangent angle, corrected for noise, exposure and intrinsic shape."},
+	{KindMethod, "tangent", "Decay of the tangent correlation along the filament, with the offset from localisation noise fitted."},
+	{KindMethod, "distance", "Mean-square distance between the ends, against the contour length."},
+	{KindMethod, "known", "A stiffness that the user gave, measured elsewhere; not an estimate from this movie."},
+	{KindMethod, "bound", "The movie gives only a lower bound: lp_um is empty and lp_high_um is inf."},
+
+	{KindThermal, "yes", "The fluctuations agree with thermal ones."},
+	{KindThermal, "no", "The fluctuations do not agree with thermal ones, and no persistence length is given."},
+	{KindThermal, "unclear", "There are too few independent shapes to tell whether the fluctuations are thermal."},
+
+	{KindConfinement, "free", "No sign of confinement: the filament undulates and drifts as a free one."},
+	{KindConfinement, "tube", "The filament is held in a tube by its surroundings."},
+	{KindConfinement, "pinned", "The filament is held at one or more places, mostly stuck to the surface."},
+	{KindConfinement, "unclear", "The movie does not say whether the filament is confined."},
+
+	{KindEnd, "free", "The end is seen."},
+	{KindEnd, "border", "The end lies outside the image."},
+	{KindEnd, "defocused", "The line fades out slowly at this end, which leaves the focus there."},
+	{KindEnd, "hidden", "The end lies under another filament or a bright spot."},
+}
