@@ -32,8 +32,8 @@ type Interval struct {
 
 // Result of [Fit].
 type Result struct {
-	// LpUm is the persistence length, µm. Value is the mean of ln Lp over the profile, which for a pure scale parameter
-	// is unbiased in the logarithm; it is NaN where the interval is open above.
+	// LpUm is the persistence length, µm. Value is the peak less the bias of a logarithm of a variance from few shapes,
+	// half the variance of ln Lp with all else known; it is NaN where the interval is open above.
 	LpUm Interval
 	// PeakLpUm is where the likelihood is highest, µm.
 	PeakLpUm float64
@@ -77,8 +77,22 @@ func Fit(d Data, o Options) (Result, error) {
 		DragProfile:   profile(m.value, best, top, paramDrag, w[paramDrag], b),
 	}
 	level := distuv.ChiSquared{K: 1}.Quantile(o.Confidence) / 2
-	r.LpUm = interval(r.LpProfile, best[paramLp], level)
 	r.DragPaS = interval(r.DragProfile, best[paramDrag], level)
+	r.LpUm = interval(r.LpProfile, best[paramLp], level)
+	if curvature := -h[paramLp][paramLp]; curvature > 0 {
+		r.LpUm.Value *= math.Exp(-0.5 / curvature)
+	}
+	r.LpUm.Value = math.Max(r.LpUm.Value, r.LpUm.Low)
+	if math.IsInf(r.LpUm.High, 1) {
+		r.LpUm.Value = math.NaN()
+	}
+	const near = 1e-2
+	for _, end := range []float64{r.LpUm.Low, r.LpUm.High} {
+		if end > 0 && !math.IsInf(end, 1) {
+			drag := r.LpProfile.dragAt(math.Log(end))
+			r.AtDragLimit = r.AtDragLimit || drag < b.low[paramDrag]+near || drag > b.high[paramDrag]-near
+		}
+	}
 	return r, nil
 }
 
@@ -108,11 +122,9 @@ func search(f func(vector) float64, b bounds) (vector, float64) {
 
 // interval turns a profile into an interval at the given drop.
 func interval(p Profile, peak, level float64) Interval {
-	r := Interval{Low: math.Exp(p.crossing(peak, level, -1)), High: math.Exp(p.crossing(peak, level, 1))}
-	mean, _ := p.moments()
-	r.Value = math.Exp(mean)
-	if math.IsInf(r.High, 1) {
-		r.Value = math.NaN()
+	return Interval{
+		Value: math.Exp(peak),
+		Low:   math.Exp(p.crossing(peak, level, -1)),
+		High:  math.Exp(p.crossing(peak, level, 1)),
 	}
-	return r
 }

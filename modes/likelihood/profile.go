@@ -8,14 +8,15 @@ import (
 // Profile is the log-likelihood of one parameter, maximised over the others, at places around its
 // maximum. X ascends, in natural logarithms of the parameter's unit; Drop is how far the log-likelihood lies below
 // its maximum, 0 or more, and Slope its derivative. FlatLow and FlatHigh say that Drop no longer grows at that end
-// within the range searched.
+// within the range searched. Drag is the logarithm of the drag (Pa·s) at each place.
 type Profile struct {
 	X, Drop, Slope    []float64
+	Drag              []float64
 	FlatLow, FlatHigh bool
 }
 
-// at returns the drop at x by cubic Hermite interpolation, outside the places by their last values.
-func (p Profile) at(x float64) float64 {
+// At returns the drop at x by cubic Hermite interpolation, outside the places by their last values.
+func (p Profile) At(x float64) float64 {
 	n := len(p.X)
 	if n == 0 {
 		return math.NaN()
@@ -70,36 +71,13 @@ func (p Profile) crossing(peak, level float64, side int) float64 {
 	outside := p.X[i]
 	for range 60 {
 		mid := (inside + outside) / 2
-		if p.at(mid) > level {
+		if p.At(mid) > level {
 			outside = mid
 		} else {
 			inside = mid
 		}
 	}
 	return inside
-}
-
-// moments returns mean and standard deviation of the parameter's logarithm under the profile taken as a density.
-func (p Profile) moments() (mean, sd float64) {
-	n := len(p.X)
-	if n < 3 {
-		return math.NaN(), math.NaN()
-	}
-	var w, wx, wxx float64
-	const cells = 12
-	x0 := p.X[n/2]
-	for i := 1; i < n; i++ {
-		for c := range cells {
-			h := (p.X[i] - p.X[i-1]) / cells
-			x := p.X[i-1] + (float64(c)+0.5)*h
-			m := math.Exp(-p.at(x)) * h
-			w += m
-			wx += m * (x - x0)
-			wxx += m * (x - x0) * (x - x0)
-		}
-	}
-	mean = wx / w
-	return x0 + mean, math.Sqrt(math.Max(0, wxx/w-mean*mean))
 }
 
 // profileDepth is how far down, in log-likelihood, a profile is followed.
@@ -119,7 +97,7 @@ func profile(f func(vector) float64, best vector, top float64, which int, width 
 		down[which] -= diffStep
 		return -(f(up) - f(down)) / (2 * diffStep)
 	}
-	follow := func(side float64) (x, drop, slopes []float64, flat bool) {
+	follow := func(side float64) (places []vector, drop, slopes []float64, flat bool) {
 		at, last := best, 0.0
 		step := 0.6 * width
 		for range 60 {
@@ -128,7 +106,7 @@ func profile(f func(vector) float64, best vector, top float64, which int, width 
 				end = b.low[which]
 			}
 			if (end-at[which])*side <= 1e-9 {
-				return x, drop, slopes, true
+				return places, drop, slopes, true
 			}
 			next := at
 			next[which] += side * step
@@ -137,10 +115,10 @@ func profile(f func(vector) float64, best vector, top float64, which int, width 
 			}
 			next, v := maximise(f, next, free, b)
 			d := top - v
-			x, drop, slopes = append(x, next[which]), append(drop, d), append(slopes, slope(next))
+			places, drop, slopes = append(places, next), append(drop, d), append(slopes, slope(next))
 			at = next
 			if d > profileDepth {
-				return x, drop, slopes, false
+				return places, drop, slopes, false
 			}
 			switch grown := d - last; {
 			case grown < 0.3:
@@ -150,18 +128,24 @@ func profile(f func(vector) float64, best vector, top float64, which int, width 
 			}
 			last = d
 		}
-		return x, drop, slopes, true
+		return places, drop, slopes, true
 	}
 	var p Profile
-	x, d, s, flat := follow(-1)
-	p.FlatLow = flat
-	for i := len(x) - 1; i >= 0; i-- {
-		p.X, p.Drop, p.Slope = append(p.X, x[i]), append(p.Drop, d[i]), append(p.Slope, s[i])
+	add := func(at vector, drop, slope float64) {
+		p.X, p.Drop, p.Slope = append(p.X, at[which]), append(p.Drop, drop), append(p.Slope, slope)
+		p.Drag = append(p.Drag, at[paramDrag])
 	}
-	p.X, p.Drop, p.Slope = append(p.X, best[which]), append(p.Drop, 0), append(p.Slope, 0)
-	x, d, s, flat = follow(1)
-	p.FlatHigh = flat
-	p.X, p.Drop, p.Slope = append(p.X, x...), append(p.Drop, d...), append(p.Slope, s...)
+	var places []vector
+	var drops, slopesAt []float64
+	places, drops, slopesAt, p.FlatLow = follow(-1)
+	for i := len(places) - 1; i >= 0; i-- {
+		add(places[i], drops[i], slopesAt[i])
+	}
+	add(best, 0, 0)
+	places, drops, slopesAt, p.FlatHigh = follow(1)
+	for i := range places {
+		add(places[i], drops[i], slopesAt[i])
+	}
 	// A better place found on the way becomes the zero.
 	low := 0.0
 	for _, d := range p.Drop {
@@ -171,4 +155,13 @@ func profile(f func(vector) float64, best vector, top float64, which int, width 
 		p.Drop[i] -= low
 	}
 	return p
+}
+
+// dragAt returns the log drag of the place nearest to x.
+func (p Profile) dragAt(x float64) float64 {
+	i := sort.SearchFloat64s(p.X, x)
+	if i == len(p.X) || i > 0 && x-p.X[i-1] < p.X[i]-x {
+		i--
+	}
+	return p.Drag[i]
 }
