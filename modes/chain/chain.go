@@ -138,6 +138,23 @@ func (c *Chain) fillSegments() {
 // Options returns what the chain was made of, with defaults filled in.
 func (c *Chain) Options() Options { return c.opts }
 
+// At returns the same chain with another home, sharing what does not depend on it.
+func (c *Chain) At(home Pose) *Chain {
+	moved := *c
+	moved.opts.Home = home
+	return &moved
+}
+
+// EndRmsUm returns the equilibrium rms displacement (µm) of an end by bending, across the
+// filament: √Σ 4 var(b_n)/L.
+func (c *Chain) EndRmsUm() float64 {
+	sum := 0.0
+	for _, v := range c.variance {
+		sum += 4 * v / c.opts.LengthUm
+	}
+	return math.Sqrt(sum)
+}
+
 // Variance returns the equilibrium variance (µm³) of mode n about the stress-free shape,
 // n from 1: kT/(κk_n⁴+γ).
 func (c *Chain) Variance(n int) float64 { return c.variance[n-1] }

@@ -152,6 +152,20 @@ func TestTubeHoldsRigidMotion(t *testing.T) {
 	withinVariance(t, "b₁", bend, kT/(15e-6*kT*k4+0.02)*1e18, n)
 }
 
+// The bulk rms of the tube from its exact modes: the mean square over the contour of a long
+// filament is Σ⟨b_n²⟩/L, its end excess 1+2√2ℓ/L divided out, ℓ = (κ/γ)^¼.
+func TestTubeStiffness(t *testing.T) {
+	lp, l, rms := 15.0, 60.0, 0.15
+	gamma := TubeStiffness(rms, lp, 295)
+	c := actin(t, func(o *Options) { o.LengthUm, o.LpUm, o.TubeStiffness, o.Modes = l, lp, gamma, 300 })
+	sum := 2 / c.tube // both rigid modes
+	for n := 1; n <= 300; n++ {
+		sum += c.Variance(n)
+	}
+	deflection := math.Pow(lp/c.tube, 0.25)
+	near(t, "rms", math.Sqrt(sum/l/(1+2*math.Sqrt2*deflection/l)), rms, 1e-4)
+}
+
 func TestResample(t *testing.T) {
 	c := Curve{X: []float64{0, 3, 3}, Y: []float64{0, 0, 1.04}}
 	points, s := c.Resample(0.5)

@@ -65,3 +65,11 @@ func blurArgument(s float64) float64 {
 	}
 	return math.Exp((low + high) / 2)
 }
+
+// TubeStiffness returns γ (N/m²) of the harmonic tube in which a long filament of
+// persistence length lpUm (µm) has the rms displacement rmsUm (µm) in each transverse
+// direction at tempK (K): ⟨y²⟩ = kT/(2√2 κ^¼ γ^¾).
+func TubeStiffness(rmsUm, lpUm, tempK float64) float64 {
+	g := math.Pow(2*math.Sqrt2*math.Pow(lpUm, 0.25)*rmsUm*rmsUm, -4.0/3) // γ/kT, µm⁻³
+	return g * KT(tempK) * 1e18
+}

@@ -131,22 +131,6 @@ func (tr *Track) MeanAmplitudes(frame int) []float64 {
 	return mean
 }
 
-// MeanCurve returns the average of curves that have equally many points, point by point:
-// the centreline that an exposure over them shows, as long as they differ by less than the
-// width of their image.
-func MeanCurve(curves []Curve) Curve {
-	n := len(curves[0].X)
-	mean := Curve{X: make([]float64, n), Y: make([]float64, n)}
-	weight := 1 / float64(len(curves))
-	for _, c := range curves {
-		for i := range n {
-			mean.X[i] += c.X[i] * weight
-			mean.Y[i] += c.Y[i] * weight
-		}
-	}
-	return mean
-}
-
 // Resample returns c in steps of equal length along it, as near as can be to spacingUm,
 // both end points kept, with the arc length (µm) of each point. Steps are measured along
 // the polyline through c's points. It panics for fewer than two points.

@@ -140,6 +140,41 @@ func TestTrackSameInAnyOrder(t *testing.T) {
 	}
 }
 
+// A bent line that slides along itself keeps its image; its mean must stay on it, where the
+// average of points of one index would cut the bend. One that shifts sideways has its mean
+// midway.
+func TestMeanCurve(t *testing.T) {
+	arc := func(slide, radius float64) Curve {
+		var c Curve
+		for k := 0; k <= 300; k++ {
+			sin, cos := math.Sincos((float64(k)*0.02 + slide) / radius)
+			c.X, c.Y = append(c.X, radius*sin), append(c.Y, radius*(1-cos))
+		}
+		return c
+	}
+	mean := MeanCurve([]Curve{arc(-0.5, 5), arc(-0.1, 5), arc(0.2, 5), arc(0.4, 5)})
+	if len(mean.X) != 301 {
+		t.Fatalf("%d points, want 301", len(mean.X))
+	}
+	for k := range mean.X {
+		near(t, "radius", math.Hypot(mean.X[k], mean.Y[k]-5), 5, 2e-5)
+	}
+	plain := MeanCurve([]Curve{arc(0.3, 5)})
+	if d := cmp.Diff(arc(0.3, 5), plain); d != "" {
+		t.Errorf("the mean of one curve is not that curve: %s", d)
+	}
+	up, down := arc(0, 5), arc(0, 5)
+	for k := range up.X {
+		up.Y[k] += 0.03
+		down.Y[k] -= 0.03
+	}
+	mean = MeanCurve([]Curve{up, down})
+	for k := 10; k < 290; k++ {
+		// Across an inclined line the midway of two crossings is curved by 0.03²κ/2.
+		near(t, "radius", math.Hypot(mean.X[k], mean.Y[k]-5), 5, 1.5e-4)
+	}
+}
+
 func TestTrackInstantaneous(t *testing.T) {
 	c := actin(t, func(o *Options) { o.Modes = 4 })
 	tr, err := c.NewTrack(TrackOptions{Frames: 3, IntervalS: 0.1, Rand: seeded(1)})

@@ -1,0 +1,73 @@
+package chain
+
+import "math"
+
+// MeanCurve returns the centreline that an exposure over curves shows, as long as they
+// differ by less than the width of their image. All have equally many points, those of one
+// index the same place of the filament.
+//
+// Points of one index are averaged first. The filament's motion along itself would shift
+// that average where it goes with a change of slope, though the image of the line does not
+// show it; so each point then moves along its normal to the mean of where curves cross it.
+func MeanCurve(curves []Curve) Curve {
+	n := len(curves[0].X)
+	mean := Curve{X: make([]float64, n), Y: make([]float64, n)}
+	weight := 1 / float64(len(curves))
+	for _, c := range curves {
+		for i := range n {
+			mean.X[i] += c.X[i] * weight
+			mean.Y[i] += c.Y[i] * weight
+		}
+	}
+	if len(curves) == 1 || n < 3 {
+		return mean
+	}
+	const reach = 4 // points to each side that fix the tangent
+	out := Curve{X: make([]float64, n), Y: make([]float64, n)}
+	for i := range n {
+		low, high := max(0, i-reach), min(n-1, i+reach)
+		tx, ty := mean.X[high]-mean.X[low], mean.Y[high]-mean.Y[low]
+		norm := math.Hypot(tx, ty)
+		offset, crossings := 0.0, 0
+		if norm > 0 {
+			tx, ty = tx/norm, ty/norm
+			for _, c := range curves {
+				if w, ok := c.crossing(mean.X[i], mean.Y[i], tx, ty, i); ok {
+					offset += w
+					crossings++
+				}
+			}
+		}
+		if crossings > 0 {
+			offset /= float64(crossings)
+		}
+		out.X[i] = mean.X[i] - offset*ty
+		out.Y[i] = mean.Y[i] + offset*tx
+	}
+	return out
+}
+
+// crossing returns how far along the normal (−ty, tx) at (x, y) c crosses it, from point i
+// on in the direction in which it comes nearer; false where c ends before.
+func (c Curve) crossing(x, y, tx, ty float64, i int) (offset float64, ok bool) {
+	along := func(k int) float64 { return (c.X[k]-x)*tx + (c.Y[k]-y)*ty }
+	across := func(k int) float64 { return (c.Y[k]-y)*tx - (c.X[k]-x)*ty }
+	u := along(i)
+	if u == 0 {
+		return across(i), true
+	}
+	step := 1
+	if u > 0 {
+		step = -1
+	}
+	for k := i + step; k >= 0 && k < len(c.X); k += step {
+		next := along(k)
+		if (next >= 0) != (u >= 0) {
+			f := u / (u - next)
+			w := across(k - step)
+			return w + f*(across(k)-w), true
+		}
+		u = next
+	}
+	return 0, false
+}
