@@ -2,7 +2,8 @@
 // chains that move into images, frame by frame, and keeps the truth beside them.
 //
 // Start with [New]; [Movie.Frame] and [Movie.Truth] then give any frame's counts and true
-// contours, in any order and concurrently. Nothing is written: lengths are µm, times s.
+// contours, in any order and concurrently, and [Movie.Write] saves it all. Lengths are µm,
+// times s.
 //
 // The same options give the same movie to the last count.
 //
@@ -55,7 +56,7 @@ type Options struct {
 	// AllowCrossing lets filaments start across each other.
 	AllowCrossing bool
 	// Fixed, if not empty, are shown instead of filaments, the same in every frame.
-	Fixed []synth.Curve `json:"-"`
+	Fixed []synth.Curve
 	// SubSteps is how many positions make an exposure; 0 takes 8 to 32 by need.
 	SubSteps int
 
