@@ -105,9 +105,9 @@ func TestSynthWritesMovieAndTruth(t *testing.T) {
 			t.Errorf("%s: %d points on 4 µm, want about 40", key, n)
 		}
 	}
-	// Background 140 counts; on the ridge at least 0.8 of the peak (pixel and offset from its
-	// middle), 0.85 after bleaching on average.
-	if want := 140 + 0.8*0.85*2*2000*0.108*0.108/(0.13*math.Sqrt(2*math.Pi)); !(on > want) {
+	// Background 140 counts; on the ridge well over half of its peak, 0.85 after bleaching on
+	// average.
+	if want := 140 + 0.6*0.85*2*2000*0.108*0.108/(0.13*math.Sqrt(2*math.Pi)); !(on > want) {
 		t.Errorf("mean count on the true contours %.0f, want above %.0f", on, want)
 	}
 }

@@ -22,24 +22,12 @@ func MeanCurve(curves []Curve) Curve {
 	if len(curves) == 1 || n < 3 {
 		return mean
 	}
-	const reach = 4 // points to each side that fix the tangent
 	out := Curve{X: make([]float64, n), Y: make([]float64, n)}
 	for i := range n {
-		low, high := max(0, i-reach), min(n-1, i+reach)
-		tx, ty := mean.X[high]-mean.X[low], mean.Y[high]-mean.Y[low]
-		norm := math.Hypot(tx, ty)
-		offset, crossings := 0.0, 0
-		if norm > 0 {
-			tx, ty = tx/norm, ty/norm
-			for _, c := range curves {
-				if w, ok := c.crossing(mean.X[i], mean.Y[i], tx, ty, i); ok {
-					offset += w
-					crossings++
-				}
-			}
-		}
-		if crossings > 0 {
-			offset /= float64(crossings)
+		tx, ty := mean.tangent(i)
+		offset := 0.0
+		for _, c := range curves {
+			offset += c.crossing(mean.X[i], mean.Y[i], tx, ty, i) * weight
 		}
 		out.X[i] = mean.X[i] - offset*ty
 		out.Y[i] = mean.Y[i] + offset*tx
@@ -47,27 +35,46 @@ func MeanCurve(curves []Curve) Curve {
 	return out
 }
 
+// tangent returns the direction of c near point i, (0, 0) where it has none.
+func (c Curve) tangent(i int) (tx, ty float64) {
+	const reach = 4 // points to each side
+	low, high := max(0, i-reach), min(len(c.X)-1, i+reach)
+	tx, ty = c.X[high]-c.X[low], c.Y[high]-c.Y[low]
+	if norm := math.Hypot(tx, ty); norm > 0 {
+		return tx / norm, ty / norm
+	}
+	return 0, 0
+}
+
 // crossing returns how far along the normal (−ty, tx) at (x, y) c crosses it, from point i
-// on in the direction in which it comes nearer; false where c ends before.
-func (c Curve) crossing(x, y, tx, ty float64, i int) (offset float64, ok bool) {
+// on in the direction in which it comes nearer. Where c ends before, it is prolonged
+// straight on, so that the mean of several has no step where one of them ends.
+func (c Curve) crossing(x, y, tx, ty float64, i int) (offset float64) {
 	along := func(k int) float64 { return (c.X[k]-x)*tx + (c.Y[k]-y)*ty }
 	across := func(k int) float64 { return (c.Y[k]-y)*tx - (c.X[k]-x)*ty }
 	u := along(i)
 	if u == 0 {
-		return across(i), true
+		return across(i)
 	}
 	step := 1
 	if u > 0 {
 		step = -1
 	}
-	for k := i + step; k >= 0 && k < len(c.X); k += step {
+	k := i + step
+	for ; k >= 0 && k < len(c.X); k += step {
 		next := along(k)
 		if (next >= 0) != (u >= 0) {
 			f := u / (u - next)
 			w := across(k - step)
-			return w + f*(across(k)-w), true
+			return w + f*(across(k)-w)
 		}
 		u = next
 	}
-	return 0, false
+	end := k - step
+	ex, ey := c.tangent(end)
+	forward := ex*tx + ey*ty
+	if !(forward > 0.2) { // across the normal: nothing to prolong
+		return across(end)
+	}
+	return across(end) - along(end)*(ey*tx-ex*ty)/forward
 }

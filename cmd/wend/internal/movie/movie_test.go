@@ -155,6 +155,9 @@ func TestExposureShowsTheTruth(t *testing.T) {
 		near(t, "mean centre y (µm)", y/photons, meanY, 2e-4)
 
 		c := m.Truth(frame)[0]
+		if l := c.SUm[len(c.SUm)-1]; !(l < 9.01 && l > 8.7) {
+			t.Errorf("frame %d: true length %.3f µm of a filament of 9 µm", frame, l)
+		}
 		sum, n := 0.0, 0
 		for k := 8; k < len(c.SUm)-8; k++ {
 			tx, ty := c.XUm[k+1]-c.XUm[k-1], c.YUm[k+1]-c.YUm[k-1]
