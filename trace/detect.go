@@ -83,6 +83,9 @@ func (d *detector) component(m *ridge.Map, start int, high, scale float64) (cand
 	}
 	sort.Ints(list)
 	list = thin(d.mask, w, list)
+	if len(list) == 0 { // a blob of four pixels thins to nothing
+		return candidate{}, false
+	}
 	pixels := d.longest(d.mask, list[0])
 	c := candidate{tangled: d.leftover(list, pixels, scale)}
 	for _, i := range list {

@@ -57,6 +57,7 @@ type pixel struct {
 	nearest         int32
 	model, residual float64 // of the last iteration; model is counts above below
 	robust          float64
+	low, high       int32 // parameters it depends on
 }
 
 // fitter holds the memory of a fit, to be used again. Not for concurrent use.
@@ -86,20 +87,21 @@ type fitter struct {
 	lightBasis []basis4
 	underBasis []basis2
 
-	parameters    []float64
-	normal        []float64 // upper band, row-major, bandwidth+1 wide
-	gradient      []float64
-	widthColumn   []float64
-	widthSum      float64
-	widthGradient float64
-	chi2          float64
-	pixels        []pixel
-	nearest       []int32 // per image pixel, index into pixels + 1, for the current band
-	entries       []entry
-	shapeAcc      []float64
-	lightAcc      []float64
-	lightNow      []float64
-	trial         []float64
+	parameters     []float64
+	normal         []float64 // upper band, row-major, bandwidth+1 wide
+	gradient       []float64
+	widthColumn    []float64
+	widthSum       float64
+	widthGradient  float64
+	chi2           float64
+	pixels         []pixel
+	nearest        []int32   // per image pixel, index into pixels + 1, for the current band
+	slopes         []float64 // of the pixel in hand, by parameter
+	alongX, alongY []float64 // Gaussians of the nodes, span long each
+	corner         [][2]float64
+	span           int
+	lightNow       []float64
+	trial          []float64
 }
 
 type basis4 struct {
@@ -112,28 +114,27 @@ type basis2 struct {
 	w     [2]float64
 }
 
-type entry struct {
-	index int
-	slope float64
-}
-
 // fit fits a centreline that starts from path. pixels (by index) that excluded names are left out;
 // excluded may be nil.
 func (f *fitter) fit(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy) (fitted, error) {
 	const passes = 3
+	path = extent(frame, background, excluded, path, f.width)
 	length := arcLengths(path)[len(path)-1]
 	ends := [2]float64{0, length}
+	var light, under []float64
 	for pass := 0; ; pass++ {
 		if err := f.prepare(frame, background, excluded, path, ends); err != nil {
 			return fitted{}, err
 		}
+		f.startFrom(light, under)
 		moved, err := f.iterate(pass)
 		if err != nil {
 			return fitted{}, err
 		}
+		light, under = f.pick(f.lightIdx), f.pick(f.underIdx)
 		path = f.centreline()
 		ends = [2]float64{0, arcLengths(path)[len(path)-1]}
-		if moved < 0.3*f.width || pass == passes-1 {
+		if pass > 0 && moved < 0.3*f.width || pass == passes-1 {
 			break
 		}
 	}
@@ -270,7 +271,8 @@ func (f *fitter) layPixels(frame, background imaging.Frame, excluded func(pixel 
 		// A pixel beside a fold sees two distant stretches of the line; it belongs to the nearer.
 		limit := int32(math.Ceil(3*reach/nodeSpacing)) + 1
 		p.first, p.last = max(p.first, p.nearest-limit), min(p.last, p.nearest+limit)
-		lo, hi := f.touched(int(p.first), int(p.last))
+		lo, hi := f.touched(int(p.first), int(p.last), int(p.nearest))
+		p.low, p.high = int32(lo), int32(hi)
 		f.bandwidth = max(f.bandwidth, hi-lo)
 	}
 	// Neighbouring shape coefficients are tied by the covariance along the line.
@@ -283,21 +285,36 @@ func (f *fitter) layPixels(frame, background imaging.Frame, excluded func(pixel 
 	return nil
 }
 
-// touched returns the lowest and highest parameter that the nodes first to last depend on.
-func (f *fitter) touched(first, last int) (lo, hi int) {
-	lo = min(f.shapeIdx[f.shapeBasis[first].first], f.lightIdx[f.lightBasis[first].first],
-		f.underIdx[f.underBasis[first].first])
-	hi = max(f.shapeIdx[f.shapeBasis[last].first+3], f.lightIdx[f.lightBasis[last].first+3],
-		f.underIdx[f.underBasis[last].first+1])
-	if f.at[first] < f.ends[0]+2*f.width {
-		lo = min(lo, f.endsIdx[0])
-		hi = max(hi, f.endsIdx[0])
-	}
-	if f.at[last] > f.ends[1]-2*f.width {
-		hi = max(hi, f.endsIdx[1])
-		lo = min(lo, f.endsIdx[1])
-	}
+// touched returns the lowest and highest parameter that a pixel near the nodes first to last depends
+// on; nearest is the node whose background it has.
+func (f *fitter) touched(first, last, nearest int) (lo, hi int) {
+	under := f.underBasis[nearest].first
+	lo = min(f.shapeIdx[f.shapeBasis[first].first], f.lightIdx[f.lightBasis[first].first], f.underIdx[under])
+	hi = max(f.shapeIdx[f.shapeBasis[last].first+3], f.lightIdx[f.lightBasis[last].first+3], f.underIdx[under+1])
 	return lo, hi
+}
+
+// pick returns the parameters at the given indices.
+func (f *fitter) pick(index []int) []float64 {
+	out := make([]float64, len(index))
+	for k, i := range index {
+		out[k] = f.parameters[i]
+	}
+	return out
+}
+
+// startFrom takes the light and the background of the pass before, if they have the same knots.
+func (f *fitter) startFrom(light, under []float64) {
+	if len(light) != len(f.lightIdx) || len(under) != len(f.underIdx) {
+		f.startLight()
+		return
+	}
+	for k, i := range f.lightIdx {
+		f.parameters[i] = light[k]
+	}
+	for k, i := range f.underIdx {
+		f.parameters[i] = under[k]
+	}
 }
 
 // startLight sets the brightness parameters from the pixels, as if the line lay where the path is.
@@ -328,9 +345,13 @@ func (f *fitter) startLight() {
 // displacement from the path.
 func (f *fitter) iterate(pass int) (moved float64, err error) {
 	const steps = 12
-	f.startLight()
+	// The first pass only has to bring the path close enough for its normals to be right.
+	settled := 0.03 * f.width
+	if pass == 0 {
+		settled = 0.15 * f.width
+	}
 	f.place()
-	f.accumulate(false)
+	f.accumulate(pass > 0)
 	last := f.chi2
 	f.trial = resize(f.trial, f.size)
 	for step := 0; step < steps; step++ {
@@ -340,18 +361,8 @@ func (f *fitter) iterate(pass int) (moved float64, err error) {
 			return 0, errFit
 		}
 		// No step may throw the line off its light.
-		limit := f.width
-		scale := 1.0
-		for _, i := range f.shapeIdx {
-			if a := math.Abs(delta[i]); a*scale > limit {
-				scale = limit / a
-			}
-		}
-		for _, i := range f.endsIdx {
-			if a := math.Abs(delta[i]); a*scale > limit {
-				scale = limit / a
-			}
-		}
+		move := f.largest(delta)
+		scale := min(1, f.width/move)
 		before := append([]float64(nil), f.parameters...)
 		for halving := 0; ; halving++ {
 			for i := range delta {
@@ -362,30 +373,37 @@ func (f *fitter) iterate(pass int) (moved float64, err error) {
 			if math.IsNaN(f.chi2) {
 				return 0, errFit
 			}
-			if f.chi2 <= last*1.02 || step < 2 || halving == 4 {
+			if f.chi2 <= last*1.02 || pass == 0 && step < 2 || halving == 4 {
 				break
 			}
 			scale /= 2
 		}
 		last = f.chi2
-		change := 0.0
-		for _, i := range f.shapeIdx {
-			change = max(change, math.Abs(scale*delta[i]))
-		}
-		for _, i := range f.endsIdx {
-			change = max(change, 0.3*math.Abs(scale*delta[i]))
-		}
-		if step >= 1 && change < 0.01*f.width {
+		if scale*move < settled {
 			break
 		}
-	}
-	for _, i := range f.shapeIdx {
-		moved = max(moved, math.Abs(f.parameters[i]))
 	}
 	if !(f.parameters[f.endsIdx[1]]-f.parameters[f.endsIdx[0]] > 3*f.width) {
 		return 0, errTooBig
 	}
-	return moved, nil
+	return f.largest(f.parameters), nil
+}
+
+// largest is the largest displacement of the line between its ends, in pixels, for shape parameters p.
+func (f *fitter) largest(p []float64) float64 {
+	most := 0.0
+	for j := range f.at {
+		if f.weight[j] == 0 {
+			continue
+		}
+		u := 0.0
+		b := &f.shapeBasis[j]
+		for k, w := range b.w {
+			u += w * p[f.shapeIdx[b.first+k]]
+		}
+		most = max(most, math.Abs(u))
+	}
+	return most
 }
 
 // place puts the nodes where the parameters say.
@@ -417,69 +435,40 @@ func (f *fitter) place() {
 	}
 }
 
-// accumulate builds the normal equations and chi² at the present parameters.
+// accumulate builds the normal equations and chi² at the present parameters. robust gives pixels
+// more than five standard deviations off less weight.
 func (f *fitter) accumulate(robust bool) {
-	n, bw := f.size, f.bandwidth
-	f.normal = resize(f.normal, n*(bw+1))
+	n, stride := f.size, f.bandwidth+1
+	f.normal = resize(f.normal, n*stride)
 	f.gradient = resize(f.gradient, n)
 	f.widthColumn = resize(f.widthColumn, n)
-	f.shapeAcc = resize(f.shapeAcc, f.shape.size())
-	f.lightAcc = resize(f.lightAcc, f.light.size())
+	f.slopes = resize(f.slopes, n)
 	clear(f.normal)
 	clear(f.gradient)
 	clear(f.widthColumn)
+	clear(f.slopes)
 	f.widthSum, f.widthGradient, f.chi2 = 0, 0, 0
-	step := f.at[1] - f.at[0]
+	f.tabulate()
 	s2 := f.width * f.width
-	norm := step / (2 * math.Pi * s2)
+	endNorm := 1 / (2 * math.Pi * s2)
 	cut := sq(reach * f.width * 1.1)
+	slopes := f.slopes
 	for i := range f.pixels {
 		p := &f.pixels[i]
-		model, widthSlope := 0.0, 0.0
-		var endSlope [2]float64
-		shapeLo, shapeHi := f.shapeBasis[p.first].first, f.shapeBasis[p.last].first+3
-		lightLo, lightHi := f.lightBasis[p.first].first, f.lightBasis[p.last].first+3
-		clear(f.shapeAcc[shapeLo : shapeHi+1])
-		clear(f.lightAcc[lightLo : lightHi+1])
-		for j := int(p.first); j <= int(p.last); j++ {
-			w := f.weight[j]
-			if w == 0 {
-				continue
-			}
-			dx, dy := p.x-f.now[j].x, p.y-f.now[j].y
-			d2 := dx*dx + dy*dy
-			if d2 > cut {
-				continue
-			}
-			g := norm * math.Exp(-d2/(2*s2))
-			light := f.lightNow[j]
-			g *= w
-			lb := &f.lightBasis[j]
-			acc := f.lightAcc[lb.first : lb.first+4 : lb.first+4]
-			acc[0] += g * lb.w[0]
-			acc[1] += g * lb.w[1]
-			acc[2] += g * lb.w[2]
-			acc[3] += g * lb.w[3]
-			g *= light
-			model += g
-			widthSlope += g * (d2/s2 - 2)
-			t := g * (dx*f.normals[j].x + dy*f.normals[j].y) / s2
-			sb := &f.shapeBasis[j]
-			acc = f.shapeAcc[sb.first : sb.first+4 : sb.first+4]
-			acc[0] += t * sb.w[0]
-			acc[1] += t * sb.w[1]
-			acc[2] += t * sb.w[2]
-			acc[3] += t * sb.w[3]
-		}
-		widthSlope /= f.width
+		lo, hi := int(p.low), int(p.high)
+		model, widthSlope := f.pixelSlopes(p)
 		for k, c := range f.endPoint {
 			// Moving an end adds or takes away a piece of line there.
 			if d2 := sq(p.x-c.x) + sq(p.y-c.y); d2 < cut {
-				endSlope[k] = float64(2*k-1) * f.endLight[k] * norm / step * math.Exp(-d2/(2*s2))
+				at := f.endsIdx[k]
+				slopes[at] = float64(2*k-1) * f.endLight[k] * endNorm * math.Exp(-d2/(2*s2))
+				lo, hi = min(lo, at), max(hi, at)
 			}
 		}
 		ub := &f.underBasis[p.nearest]
-		under := ub.w[0]*f.parameters[f.underIdx[ub.first]] + ub.w[1]*f.parameters[f.underIdx[ub.first+1]]
+		u0, u1 := f.underIdx[ub.first], f.underIdx[ub.first+1]
+		slopes[u0], slopes[u1] = ub.w[0], ub.w[1]
+		under := ub.w[0]*f.parameters[u0] + ub.w[1]*f.parameters[u1]
 		residual := p.value - under - model
 		weight := 1 / f.camera.Variance(p.below+under+max(model, 0))
 		p.robust = 1
@@ -491,44 +480,93 @@ func (f *fitter) accumulate(robust bool) {
 		weight *= p.robust
 		p.model, p.residual = under+model, residual
 		f.chi2 += weight * residual * residual
-
-		list := f.entries[:0]
-		for k := shapeLo; k <= shapeHi; k++ {
-			if v := f.shapeAcc[k]; v != 0 {
-				list = append(list, entry{f.shapeIdx[k], v})
-			}
-		}
-		for k := lightLo; k <= lightHi; k++ {
-			if v := f.lightAcc[k]; v != 0 {
-				list = append(list, entry{f.lightIdx[k], v})
-			}
-		}
-		list = append(list, entry{f.underIdx[ub.first], ub.w[0]}, entry{f.underIdx[ub.first+1], ub.w[1]})
-		for k := range endSlope {
-			if endSlope[k] != 0 {
-				list = append(list, entry{f.endsIdx[k], endSlope[k]})
-			}
-		}
-		f.entries = list
-		for a := range list {
-			ea := list[a]
-			v := weight * ea.slope
-			f.gradient[ea.index] += v * residual
-			f.widthColumn[ea.index] += v * widthSlope
-			for b := a; b < len(list); b++ {
-				eb := list[b]
-				lo, d := ea.index, eb.index-ea.index
-				if d < 0 {
-					lo, d = eb.index, -d
-				}
-				if d <= bw {
-					f.normal[lo*(bw+1)+d] += v * eb.slope
-				}
-			}
-		}
 		f.widthSum += weight * widthSlope * widthSlope
 		f.widthGradient += weight * widthSlope * residual
+
+		for a := lo; a <= hi; a++ {
+			v := slopes[a]
+			if v == 0 {
+				continue
+			}
+			v *= weight
+			f.gradient[a] += v * residual
+			f.widthColumn[a] += v * widthSlope
+			right := slopes[a:min(hi+1, a+stride)]
+			row := f.normal[a*stride:][:len(right)]
+			for b, w := range right {
+				row[b] += v * w
+			}
+		}
+		clear(slopes[lo : hi+1])
 	}
+}
+
+// tabulate writes each node's Gaussian along x and along y, with the node's share of the line in
+// the first.
+func (f *fitter) tabulate() {
+	f.span = 2*int(math.Ceil(reach*f.width)) + 2
+	need := len(f.now) * f.span
+	f.alongX, f.alongY = resize(f.alongX, need), resize(f.alongY, need)
+	if cap(f.corner) < len(f.now) {
+		f.corner = make([][2]float64, len(f.now))
+	}
+	f.corner = f.corner[:len(f.now)]
+	s2 := f.width * f.width
+	norm := (f.at[1] - f.at[0]) / (2 * math.Pi * s2)
+	half := float64(f.span)/2 - 1
+	for j, c := range f.now {
+		x0, y0 := math.Floor(c.x)-half, math.Floor(c.y)-half
+		f.corner[j] = [2]float64{x0, y0}
+		share := norm * f.weight[j]
+		ex, ey := f.alongX[j*f.span:(j+1)*f.span], f.alongY[j*f.span:(j+1)*f.span]
+		if share == 0 {
+			clear(ex)
+			continue
+		}
+		gaussians(ex, x0-c.x, s2, share)
+		gaussians(ey, y0-c.y, s2, 1)
+	}
+}
+
+// gaussians fills out with scale·exp(-(from+i)²/(2·s2)), by the recurrence of the ratio of neighbours.
+func gaussians(out []float64, from, s2, scale float64) {
+	value := scale * math.Exp(-from*from/(2*s2))
+	ratio := math.Exp(-(2*from + 1) / (2 * s2))
+	decay := math.Exp(-1 / s2)
+	for i := range out {
+		out[i] = value
+		value *= ratio
+		ratio *= decay
+	}
+}
+
+// pixelSlopes adds up what the nodes within reach of p send there, and leaves the derivatives with
+// respect to shape and light in slopes.
+func (f *fitter) pixelSlopes(p *pixel) (model, widthSlope float64) {
+	s2 := 1 / (f.width * f.width)
+	slopes := f.slopes
+	for j := int(p.first); j <= int(p.last); j++ {
+		c := &f.corner[j]
+		ix, iy := int(p.x-c[0]), int(p.y-c[1])
+		if uint(ix) >= uint(f.span) || uint(iy) >= uint(f.span) || f.weight[j] == 0 {
+			continue
+		}
+		g := f.alongX[j*f.span+ix] * f.alongY[j*f.span+iy]
+		lb := &f.lightBasis[j]
+		for k, w := range lb.w {
+			slopes[f.lightIdx[lb.first+k]] += g * w
+		}
+		g *= f.lightNow[j]
+		dx, dy := p.x-f.now[j].x, p.y-f.now[j].y
+		model += g
+		widthSlope += g * ((dx*dx+dy*dy)*s2 - 2)
+		t := g * (dx*f.normals[j].x + dy*f.normals[j].y) * s2
+		sb := &f.shapeBasis[j]
+		for k, w := range sb.w {
+			slopes[f.shapeIdx[sb.first+k]] += t * w
+		}
+	}
+	return model, widthSlope / f.width
 }
 
 // prior adds information so weak that it only decides what the pixels leave open (a dark gap,

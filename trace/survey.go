@@ -63,7 +63,7 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 	c.Camera = imaging.Camera{GainCounts: 1e-6, OffsetCounts: 0, ReadVariance: max(sq(median(noise)), 1.0/12)}
 	var samples imaging.NoiseSamples
 	lines := 0
-	for round := range 4 {
+	for round := range 3 {
 		tracer, err := NewTracer(o, c)
 		if err != nil {
 			return Conditions{}, err
