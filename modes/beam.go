@@ -71,14 +71,19 @@ func newBasis(lengthUm float64, count int) basis {
 }
 
 func (b basis) amplitudes(c Curve) []float64 {
-	out := make([]float64, len(b.k))
 	ch, ok := newChords(c)
 	if !ok || !(b.lengthUm > 0) {
+		out := make([]float64, len(b.k))
 		for i := range out {
 			out[i] = math.NaN()
 		}
 		return out
 	}
+	return b.amplitudesOf(ch)
+}
+
+func (b basis) amplitudesOf(ch chords) []float64 {
+	out := make([]float64, len(b.k))
 	spacing := b.lengthUm / float64(len(ch.angle))
 	for m, k := range b.k {
 		h := k * spacing / 2

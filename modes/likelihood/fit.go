@@ -17,6 +17,8 @@ type Options struct {
 	LpLowUm, LpHighUm float64
 	// Confidence is that of the intervals.
 	Confidence float64
+	// LpOnly leaves out the profile of the drag and the single tracks, for a quicker answer.
+	LpOnly bool
 }
 
 // DefaultOptions: noise predicted to a factor 1.3; a drag from a quarter of what water at 40 °C lays on the
@@ -45,6 +47,10 @@ type Result struct {
 	LogLikelihood float64
 	// LpSD is the standard deviation of ln Lp from the curvature at the peak, drag and noise scale unknown.
 	LpSD float64
+	// RatioSD is that of ln(drag/Lp), the logarithm of any mode's relaxation time.
+	RatioSD float64
+	// Tracks are the single modes, in the order of the data's.
+	Tracks []TrackFit
 	// LpProfile and DragProfile are in ln µm and ln Pa·s.
 	LpProfile, DragProfile Profile
 	// AtDragLimit says that an end of the interval of Lp stands where the drag met the end of its range: the data alone do
@@ -73,11 +79,18 @@ func Fit(d Data, o Options) (Result, error) {
 		NoiseScaleSD:  math.Min(w[paramNoise], o.NoiseScaleSD),
 		LogLikelihood: top,
 		LpSD:          w[paramLp],
+		RatioSD:       contrastSD(h, all),
 		LpProfile:     profile(m.value, best, top, paramLp, w[paramLp], b),
-		DragProfile:   profile(m.value, best, top, paramDrag, w[paramDrag], b),
+		DragPaS:       Interval{math.Exp(best[paramDrag]), math.NaN(), math.NaN()},
 	}
 	level := distuv.ChiSquared{K: 1}.Quantile(o.Confidence) / 2
-	r.DragPaS = interval(r.DragProfile, best[paramDrag], level)
+	if !o.LpOnly {
+		r.DragProfile = profile(m.value, best, top, paramDrag, w[paramDrag], b)
+		r.DragPaS = interval(r.DragProfile, best[paramDrag], level)
+		for i := range d.Tracks {
+			r.Tracks = append(r.Tracks, m.single(i, best, b))
+		}
+	}
 	r.LpUm = interval(r.LpProfile, best[paramLp], level)
 	if curvature := -h[paramLp][paramLp]; curvature > 0 {
 		r.LpUm.Value *= math.Exp(-0.5 / curvature)

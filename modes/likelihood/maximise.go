@@ -191,3 +191,15 @@ func widths(h [params][params]float64, free [params]bool) vector {
 	}
 	return w
 }
+
+// contrastSD returns the standard deviation of the drag's parameter less that of Lp at a maximum, +Inf
+// where f is flat or curves up.
+func contrastSD(h [params][params]float64, free [params]bool) float64 {
+	var e vector
+	e[paramLp], e[paramDrag] = -1, 1
+	c, ok := newton(e, h, free, 0)
+	if v := c[paramDrag] - c[paramLp]; ok && v > 0 {
+		return math.Sqrt(v)
+	}
+	return math.Inf(1)
+}

@@ -1,0 +1,173 @@
+package modes
+
+import (
+	"fmt"
+	"math"
+
+	"wend/modes/chain"
+	"wend/modes/likelihood"
+)
+
+// Analyse says what the contours of one free filament tell about its stiffness. It never panics on what s holds: frames that can't be
+// used are left out, and what can't be estimated is NaN with a flag that says why. s is left as it was.
+func Analyse(s Series, o Options) Result {
+	nan := math.NaN()
+	r := Result{LpUm: nan, LpLowUm: nan, LpHighUm: nan, Shapes: nan, Thermal: ThermalUnclear, Confinement: ConfinementUnclear,
+		TangentFitLpUm: nan, TangentFitIntercept: nan}
+	if !s.FreeEnds {
+		r.flag(FlagEnds)
+	}
+	a := measure(s, o)
+	if len(a.frames.TimesS) < 2 {
+		r.flag(FlagFewFrames)
+		return r
+	}
+	if a.frames.ExposureS == 0 {
+		r.flag(FlagNoBlur)
+	}
+	if a.fitted == 0 {
+		r.flag(FlagShort)
+		return r
+	}
+	if a.fitted < 3 {
+		r.flag(FlagShort)
+	}
+	d := a.data(0, len(a.frames.TimesS))
+	fit, err := likelihood.Fit(d, o.Likelihood)
+	if err != nil {
+		r.flag(FlagFit)
+		return r
+	}
+	t := theory{lpUm: fit.PeakLpUm, dragPaS: fit.DragPaS.Value, noiseScale: fit.NoiseScale}
+	bound := math.IsInf(fit.LpUm.High, 1)
+	if bound {
+		// The shortest that the data allow has the slowest modes and so the fewest shapes.
+		t.lpUnresolved = true
+		if fit.LpUm.Low > 0 {
+			t.lpUm = fit.LpUm.Low
+		}
+		r.flag(FlagLowerBound)
+	} else {
+		t.lpUm = fit.LpUm.Value
+	}
+	r.recommend(fit, bound)
+	if fit.AtDragLimit {
+		r.flag(FlagDragLimit)
+	}
+	r.Shapes = IndependentShapes(a.frames.TimesS, a.relaxation(a.k[0], t))
+	if !(r.Shapes >= o.MinShapes) {
+		r.flag(FlagFewShapes)
+	}
+	r.dynamics(a, fit, bound)
+	r.classic(a, fit, t, s, o)
+	if a.bend() > 1 {
+		r.flag(FlagLargeBends)
+	}
+	if disagree(a, o) {
+		r.flag(FlagChanging)
+	}
+	r.judge(a, fit, t, bound, o)
+	return r
+}
+
+func (r *Result) flag(code string) {
+	for _, f := range r.Flags {
+		if f == code {
+			return
+		}
+	}
+	r.Flags = append(r.Flags, code)
+}
+
+func (r *Result) add(quantity, method string, value, low, high float64, note string) {
+	r.Estimates = append(r.Estimates, Estimate{quantity, method, value, low, high, note})
+}
+
+// recommend enters the likelihood's persistence length and the rigidity that follows.
+func (r *Result) recommend(fit likelihood.Result, bound bool) {
+	r.LpUm, r.LpLowUm, r.LpHighUm, r.LpFrom = fit.LpUm.Value, fit.LpUm.Low, fit.LpUm.High, FromLikelihood
+	note := fmt.Sprintf("all resolved bending modes together; drag fitted; noise %.2f times the predicted", fit.NoiseScale)
+	if bound {
+		r.LpFrom = FromBound
+		note += "; no upper limit"
+		if !(fit.LpUm.Low > 0) {
+			r.LpLowUm, r.LpHighUm, r.LpFrom = math.NaN(), math.NaN(), ""
+		}
+	}
+	r.add(QuantityLp, MethodLikelihood, r.LpUm, r.LpLowUm, r.LpHighUm, note)
+}
+
+// dynamics enters rigidity, drag and the slowest relaxation time.
+func (r *Result) dynamics(a amplitudes, fit likelihood.Result, bound bool) {
+	kt := chain.KT(a.temperatureK) * 1e-6 // J·m per µm of Lp
+	r.add(QuantityRigidity, MethodLikelihood, r.LpUm*kt, r.LpLowUm*kt, r.LpHighUm*kt, "persistence length times kT")
+	drag, slowest := fit.DragPaS, math.NaN()
+	low, high := math.NaN(), math.NaN()
+	if bound {
+		drag.Value = math.NaN()
+	} else {
+		slowest = likelihood.ModeProcess(a.k[0], fit.PeakLpUm, fit.DragPaS.Value, a.temperatureK).RelaxationS
+		w := math.Exp(1.959964 * fit.RatioSD)
+		low, high = slowest/w, slowest*w
+	}
+	r.add(QuantityDrag, MethodLikelihood, drag.Value, drag.Low, drag.High, "transverse drag per length, fitted as one number for all modes")
+	r.add(QuantitySlowest, MethodLikelihood, slowest, low, high, "relaxation time of the first bending mode")
+}
+
+// classic enters the cosine modes, the tangent correlation and the end-to-end distance with their estimates.
+func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series, o Options) {
+	rows := cosineModes(a, t, o)
+	const knownTo = 0.7 // standard deviation of ln τ up to which a relaxation time is shown
+	for i := range rows {
+		if i < len(fit.Tracks) && fit.Tracks[i].RelaxationSD < knownTo {
+			rows[i].RelaxationS = fit.Tracks[i].RelaxationS
+		}
+		r.Modes = append(r.Modes, rows[i].Mode)
+	}
+	value, low, high, used := combineModes(rows)
+	note := fmt.Sprintf("%d cosine modes, corrected for noise, exposure (fitted drag) and the subtracted mean shape", used)
+	if used == 0 {
+		note = "no mode could be used"
+	}
+	r.add(QuantityLp, MethodModes, value, low, high, note)
+
+	tangent, _ := tangentCorrelation(a, t)
+	line := fitTangent(a, tangent, t, o)
+	for _, row := range tangent {
+		r.Tangent = append(r.Tangent, row.Separation)
+	}
+	note = "too few separations for a line"
+	if !math.IsNaN(line.fromUm) {
+		note = fmt.Sprintf("line from %.2g to %.2g µm with free intercept, slope corrected for exposure and noise; includes any intrinsic bend",
+			line.fromUm, line.toUm)
+		if line.slopePerUm > 0 {
+			r.TangentFitLpUm, r.TangentFitIntercept = 1/(2*line.slopePerUm), line.intercept
+		}
+	}
+	distance := fitDistance(a, t, s.LengthSDUm, s.LengthSEUm)
+	if t.lpUnresolved {
+		// Neither can be corrected for blur, nor its shapes counted, without a stiffness.
+		line.lpUm, line.low, line.high = math.NaN(), math.NaN(), math.NaN()
+		distance = distanceFit{math.NaN(), math.NaN(), math.NaN()}
+		note = "fluctuations not resolved"
+	}
+	r.add(QuantityLp, MethodTangent, line.lpUm, line.low, line.high, note)
+	note = "fixed contour length, corrected for noise and for undulations hidden by exposure and optics; includes any intrinsic bend; a small error of the length weighs much"
+	if math.IsNaN(distance.lpUm) {
+		note = "the ends are as far apart as the contour is long, within the noise"
+	}
+	r.add(QuantityLp, MethodDistance, distance.lpUm, distance.low, distance.high, note)
+}
+
+// bend returns the root mean square over frames of the angle, rad, by which the tangent departs from its mean along the contour.
+func (a amplitudes) bend() float64 {
+	sum := 0.0
+	for _, ch := range a.chords {
+		m, m2 := mean(ch.angle), 0.0
+		for _, x := range ch.angle {
+			m2 += (x - m) * (x - m)
+		}
+		sum += m2 / float64(len(ch.angle))
+	}
+	return math.Sqrt(sum / float64(len(a.chords)))
+}

@@ -1,0 +1,49 @@
+package modes
+
+// Flags of a [Result].
+const (
+	FlagLowerBound = "lower_bound" // only a lower bound of the persistence length
+	FlagFewShapes  = "few_shapes"  // few independent shapes, however many frames
+	FlagFewFrames  = "few_frames"  // too few usable frames for any estimate
+	FlagShort      = "short"       // no or hardly any bending mode is long enough to be resolved
+	FlagChanging   = "changing"    // the halves of the movie disagree
+	FlagDrag       = "drag"        // the drag is far from that of a filament in water
+	FlagDragLimit  = "drag_limit"  // an end of the interval rests on the range allowed for the drag
+	FlagEnds       = "ends"        // an end was not seen
+	FlagNoBlur     = "no_blur_correction"
+	FlagNotThermal = "not_thermal"
+	FlagLargeBends = "large_bends" // bends of more than a radian: the small-angle dynamics hold less well
+	FlagFit        = "fit"         // a fit failed
+)
+
+// Reasons why a [Mode] is not used.
+const (
+	ReasonNoise      = "noise"       // the noise exceeds the expected signal
+	ReasonBlur       = "blur"        // the exposure averages the mode away
+	ReasonResolution = "resolution"  // the wavelength is finer than the optics resolve
+	ReasonFewShapes  = "few_shapes"  // too few independent shapes
+	ReasonLowerBound = "lower_bound" // the variance does not exceed the noise
+)
+
+// Values of Result.Thermal and Result.Confinement, and of Result.LpFrom.
+const (
+	ThermalYes         = "yes"
+	ThermalNo          = "no"
+	ThermalUnclear     = "unclear"
+	ConfinementFree    = "free"
+	ConfinementUnclear = "unclear"
+	FromLikelihood     = "likelihood"
+	FromBound          = "bound"
+)
+
+// Quantities and methods of an [Estimate].
+const (
+	QuantityLp       = "lp_um"
+	QuantityRigidity = "bending_rigidity_N_m2"
+	QuantityDrag     = "drag_Pa_s"
+	QuantitySlowest  = "slowest_s"
+	MethodLikelihood = "likelihood"
+	MethodModes      = "modes"
+	MethodTangent    = "tangent"
+	MethodDistance   = "distance"
+)

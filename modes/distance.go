@@ -1,0 +1,116 @@
+package modes
+
+import (
+	"math"
+
+	"wend/modes/chain"
+)
+
+// distanceFit is the persistence length from the mean-square distance between the ends, µm, with its interval.
+type distanceFit struct {
+	lpUm, low, high float64
+}
+
+// fitDistance compares the mean-square distance between the ends with the fixed contour length in the plane,
+// ⟨R²⟩ = 4LpL[1-(2Lp/L)(1-e^(-L/2Lp))].
+//
+// Corrected are: the errors of the ends in R², along the line (lengthSEUm is the standard error of one frame's length) and across;
+// the length that noise adds to the contour and the length of the undulations that exposure and optics hide. An intrinsic bend counts as
+// flexibility. The interval has the shapes of the modes behind R and the error of the fixed length, taken as the scatter of the lengths,
+// lengthSDUm, over the root of the frames.
+func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanceFit {
+	fit := distanceFit{math.NaN(), math.NaN(), math.NaN()}
+	l, frames := a.lengthUm, float64(len(a.curves))
+	r2 := 0.0
+	for _, c := range a.curves {
+		n := len(c.XUm) - 1
+		dx, dy := c.XUm[n]-c.XUm[0], c.YUm[n]-c.YUm[0]
+		r2 += (dx*dx + dy*dy) / frames
+	}
+	if lengthSEUm > 0 {
+		r2 -= lengthSEUm * lengthSEUm
+	}
+	// Across the line the two ends err by P/L·(1+3) from the rigid modes and 4/L from each bending mode.
+	noiseUm3 := t.noiseScale * mean(a.noiseUm3)
+	endVariance, noiseLength := 4*noiseUm3/l, 0.0
+	steep := make([]float64, theoryModes) // ∫ψ′² ds, 1/µm²
+	for m := range steep {
+		steep[m] = slopeSquare(m+1) / (l * l)
+		if m < a.resolved {
+			noise := noiseUm3 * a.noiseGain(m+1)
+			endVariance += 4 * noise / l
+			noiseLength += noise * steep[m] / 2
+		}
+	}
+	r2 -= 2 * endVariance
+	hidden := func(lpUm float64) float64 {
+		sum := 0.0
+		own := theory{lpUm: lpUm, dragPaS: t.dragPaS}
+		for m := range steep {
+			k := BeamWavenumber(m+1, l)
+			shown := 0.0
+			if m < a.resolved {
+				shown = chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, own))
+			}
+			sum += steep[m] / (2 * lpUm * math.Pow(k, 4)) * (1 - shown)
+		}
+		// The rest, with ∫ψ′² → k² and k → (m+½)π/L.
+		return sum + l*l/(2*math.Pi*math.Pi*lpUm*(theoryModes+1))
+	}
+	missing := func(x float64) float64 { // falls with Lp where it crosses zero
+		lp := math.Exp(x)
+		return r2 - chain.MeanSquareEndToEnd2D(lp, l-noiseLength+hidden(lp))
+	}
+	const ceiling, step = 16.0, 0.05
+	x := ceiling
+	if missing(x) > 0 {
+		return fit
+	}
+	for ; x > math.Log(l)-6; x -= step {
+		if missing(x) > 0 {
+			break
+		}
+	}
+	lo, hi := x, x+step
+	if missing(lo) <= 0 {
+		return fit
+	}
+	for range 60 {
+		mid := (lo + hi) / 2
+		if missing(mid) > 0 {
+			lo = mid
+		} else {
+			hi = mid
+		}
+	}
+	fit.lpUm = math.Exp((lo + hi) / 2)
+	// Error of the contraction L-R, to first order Σ b²·½[∫ψ′²-(ψ(L)-ψ(0))²/L].
+	variance := lengthSDUm * lengthSDUm / frames
+	if !(variance >= 0) {
+		variance = 0
+	}
+	for m, s := range a.turnSpreads(t) {
+		e := steep[m] / 2
+		if m%2 == 1 { // even modes: ψ(L) = -ψ(0) = ∓2/√L
+			e -= 8 / (l * l)
+		}
+		variance += s * e * e
+	}
+	contraction := l + hidden(fit.lpUm) - noiseLength - math.Sqrt(math.Max(0, r2))
+	if contraction > 0 && variance > 0 {
+		low, high := scaledInterval(1, variance/(contraction*contraction))
+		fit.low, fit.high = fit.lpUm/high, fit.lpUm/low
+	}
+	return fit
+}
+
+// slopeSquare returns ∫ψ_m′² over a filament of unit length.
+func slopeSquare(m int) float64 {
+	const cells = 400
+	sum := 0.0
+	for i := range cells {
+		d := chain.BeamSlope(m, (float64(i)+0.5)/cells)
+		sum += d * d
+	}
+	return sum / cells
+}
