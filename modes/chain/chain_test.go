@@ -112,6 +112,29 @@ func TestVarianceAndRelaxationIdentity(t *testing.T) {
 	near(t, "τ₁", free.RelaxationS(1)/want, 1, 1e-12)
 }
 
+// Before the slowest mode relaxes, a point in the middle moves as on an endless filament,
+// ⟨Δy²⟩ = 2Γ(¼)/(3π)·kT t^¾/(κ^¼ζ^¾), and one at an end four times as far. The exponent is that of Farge &
+// Maggs, Macromolecules 26:5041 (1993) (citation from memory), the coefficient
+// (2kT/π)∫(1−e^{−κq⁴t/ζ})/(κq⁴)dq.
+func TestModesAddUpToThreeQuarterLaw(t *testing.T) {
+	c := actin(t, func(o *Options) { o.Modes = 400 })
+	dt := 1e-3 * c.RelaxationS(1)
+	kT, zeta, l := KT(295), 2e-3, 12e-6
+	msd := func(x float64) float64 {
+		offset := x - 0.5
+		// Rigid: 2D⊥t and 2D_r t times the squared distance from the middle.
+		sum := 2 * kT / (zeta * l) * dt * (1 + 12*offset*offset) * 1e12
+		for n := 1; n <= 400; n++ {
+			psi := BeamMode(n, x)
+			sum += -2 * c.Variance(n) * math.Expm1(-dt/c.RelaxationS(n)) * psi * psi / 12
+		}
+		return sum
+	}
+	want := 2 * math.Gamma(0.25) / (3 * math.Pi) * kT * math.Pow(dt, 0.75) / math.Pow(15e-6*kT, 0.25) / math.Pow(zeta, 0.75) * 1e12
+	near(t, "middle", msd(0.5)/want, 1, 1e-3)
+	near(t, "end", msd(0)/want, 4, 4e-3)
+}
+
 func TestStressFreeShape(t *testing.T) {
 	c := actin(t, func(o *Options) { o.CurvaturePerUm, o.WanderUm, o.TurnRad = 0.1, 0, 0 })
 	var curve Curve
