@@ -19,11 +19,13 @@ type Calibration struct {
 type Info struct {
 	Path          string
 	Width, Height int
-	// Pages in the file; SizeC channels, SizeZ slices and SizeT frames they stand for.
+	// Pages in the file; SizeC channels, SizeZ slices and SizeT frames they stand for. Slices of
+	// a single time are taken as frames, so that SizeZ is 1 in an open stack.
 	Pages, SizeC, SizeZ, SizeT int
 	// DimensionOrder is OME's, "XYCZT" where the file does not say.
 	DimensionOrder string
-	ChannelNames   []string
+	// ChannelNames has a name, maybe an empty one, for each channel; nil where the file has none.
+	ChannelNames []string
 	// PixelType is uint8, uint16 or float32; MaxCount is the largest value that the camera
 	// could store (NaN for float).
 	PixelType string

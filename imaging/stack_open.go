@@ -37,6 +37,14 @@ type Stack struct {
 // that is read gives an error that names the file, the page (from 1), what was found and what
 // was wanted; for damage it is [ErrDamaged] under errors.Is. The caller closes the Stack.
 func Open(path string, o OpenOptions) (*Stack, error) {
+	// Opening a pipe would wait for its other end, so that the kind is looked up before.
+	if st, err := os.Stat(path); err == nil && !st.Mode().IsRegular() {
+		what := "not a regular file"
+		if st.IsDir() {
+			what = "a folder"
+		}
+		return nil, fmt.Errorf("imaging: %s: %s, want a TIFF stack", path, what)
+	}
 	f, err := os.Open(path)
 	if err != nil {
 		return nil, fmt.Errorf("imaging: %w", err)
@@ -45,14 +53,6 @@ func Open(path string, o OpenOptions) (*Stack, error) {
 	if err != nil {
 		f.Close()
 		return nil, fmt.Errorf("imaging: %w", err)
-	}
-	if !st.Mode().IsRegular() {
-		f.Close()
-		what := "not a regular file"
-		if st.IsDir() {
-			what = "a folder"
-		}
-		return nil, fmt.Errorf("imaging: %s: %s, want a TIFF stack", path, what)
 	}
 	s, err := openReader(f, st.Size(), path, o)
 	if err != nil {

@@ -67,6 +67,9 @@ func CreateStack(path string, m StackMeta) (*StackWriter, error) {
 	if m.Width < 1 || m.Height < 1 || m.Frames < 1 || m.Channels < 1 {
 		return nil, fmt.Errorf("imaging: %s: %d frames of %d channels of %d x %d pixels, want at least one of each", path, m.Frames, m.Channels, m.Width, m.Height)
 	}
+	if m.Frames > maxPages || m.Channels > maxPages || m.Frames*m.Channels > maxPages {
+		return nil, fmt.Errorf("imaging: %s: %d frames of %d channels, want at most %d planes", path, m.Frames, m.Channels, maxPages)
+	}
 	if m.PixelType != "uint8" && m.PixelType != "uint16" && m.PixelType != "float32" {
 		return nil, fmt.Errorf("imaging: %s: pixel type %q, want uint8, uint16 or float32", path, m.PixelType)
 	}
@@ -81,9 +84,12 @@ func CreateStack(path string, m StackMeta) (*StackWriter, error) {
 		return nil, fmt.Errorf("imaging: %s: %d channel names, want at most %d", path, len(m.ChannelNames), m.Channels)
 	}
 	w := &StackWriter{meta: m, path: path, xml: omeXML(m)}
+	if len(w.xml) >= maxTagBytes {
+		return nil, fmt.Errorf("imaging: %s: OME-XML of %d bytes, want less than %d: leave out exposure and times of the planes", path, len(w.xml), maxTagBytes)
+	}
 	// Deflate adds at most five bytes to each 16 KiB that it cannot compress (RFC 1951).
 	page *= int64(m.Width) * int64(m.Height)
-	most := (page+page/1000+1024)*int64(m.Frames)*int64(m.Channels) + int64(len(w.xml))
+	most := (page+page/1000+1024)*int64(m.Frames*m.Channels) + int64(len(w.xml))
 	w.big = m.BigTIFF || most > math.MaxUint32
 	if !m.Uncompressed {
 		z, err := zlib.NewWriterLevel(&w.packed, 1)

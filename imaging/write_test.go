@@ -201,6 +201,7 @@ func TestWriterErrors(t *testing.T) {
 	}{
 		{func(m *StackMeta) { m.Width = 0 }, "1 frames of 1 channels of 0 x 3 pixels, want at least one of each"},
 		{func(m *StackMeta) { m.Frames = 0 }, "0 frames of 1 channels of 4 x 3 pixels, want at least one of each"},
+		{func(m *StackMeta) { m.Frames, m.Channels = 3_000_000, 2 }, "3000000 frames of 2 channels, want at most 4000000 planes"},
 		{func(m *StackMeta) { m.PixelType = "int16" }, `pixel type "int16", want uint8, uint16 or float32`},
 		{func(m *StackMeta) { m.TimesS = []float64{0, 1} }, "2 times, want one for each of 1 frames"},
 		{func(m *StackMeta) { m.ChannelNames = []string{"a", "b"} }, "2 channel names, want at most 1"},
