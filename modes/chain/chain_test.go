@@ -54,9 +54,9 @@ func TestNewChainRefuses(t *testing.T) {
 // cosine-mode variances (L/nπ)²/Lp, its correlations and ⟨R²⟩ those of the plane, at bends
 // far from small (L = 2Lp).
 func TestEquilibriumStatics(t *testing.T) {
-	const chains, modes = 3000, 5
+	const chains, modes = 2500, 5
 	lp, l := 6.0, 12.0
-	c := actin(t, func(o *Options) { o.LpUm, o.LengthUm, o.Modes = lp, l, 100 })
+	c := actin(t, func(o *Options) { o.LpUm, o.LengthUm, o.Modes = lp, l, 60 })
 	rng := rand.New(rand.NewPCG(11, 4))
 	var squares [modes + 1]float64
 	var r2, r4, cosine, cosine2 float64
@@ -91,7 +91,7 @@ func TestEquilibriumStatics(t *testing.T) {
 	}
 	// Modes above the last leave out tangent variance L/(π²·Lp·Modes) at each point, and so
 	// shift both means by the order of that.
-	left := l / (math.Pi * math.Pi * lp * 100)
+	left := l / (math.Pi * math.Pi * lp * 60)
 	mean := r2 / chains
 	se := math.Sqrt((r4/chains - mean*mean) / chains)
 	near(t, "⟨R²⟩", mean, MeanSquareEndToEnd2D(lp, l), 4*se+mean*left)
