@@ -17,6 +17,7 @@ const (
 	notThermal  = 0.7  // this standard deviation of ln Lp between modes, a factor of two
 	dragTooLow  = 0.5  // times the drag in water, which the interval must reach to pass as an aqueous medium
 	dragTooHigh = 100  // times the drag in water, beyond which the drag is flagged
+	resolvedTo  = 0.5  // standard deviation of ln Lp up to which the fluctuation counts as resolved
 	minHalf     = 10   // frames in each half of the movie
 )
 
@@ -66,7 +67,7 @@ func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool
 		r.flag(FlagNotThermal)
 	case p >= pUnequal && plausible:
 		r.Confinement = ConfinementFree
-		if !ends && r.Shapes >= o.MinShapes {
+		if !ends && fit.LpSD < resolvedTo {
 			r.Thermal = ThermalYes
 		}
 	}

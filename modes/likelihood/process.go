@@ -117,7 +117,8 @@ func filter(p Process, f Frames, y, noise []float64) sums {
 			if dead < 0 {
 				dead = 0
 			}
-			if dead != lastDead {
+			// Times are sums of roundings: equal gaps differ in their last digits, and exp is dear.
+			if !(math.Abs(dead-lastDead) <= 1e-9*lastDead) {
 				lastDead, carry = dead, math.Exp(-dead/p.RelaxationS)
 			}
 			x *= carry

@@ -1,0 +1,100 @@
+package main
+
+import (
+	"math"
+	"math/rand/v2"
+
+	"wend/modes"
+	"wend/modes/chain"
+	"wend/modes/likelihood"
+)
+
+// condition is a movie of one free filament.
+type condition struct {
+	dragPaS, lengthUm, lpUm float64
+	frames                  int
+	intervalS, exposureS    float64
+	noiseUm3                float64
+	noiseScale              float64 // true noise over predicted
+}
+
+const (
+	temperatureK = 295.15
+	psfUm        = 0.13
+	spacingUm    = 0.1
+	finestUm     = 6.8 * psfUm // wavelength below which a contour holds neither signal nor noise
+	bendPerUm    = 0.03        // curvature of the intrinsic shape
+)
+
+// simulate draws the contours of a movie: exposure-averaged thermal modes about a bent shape, and noise of the density that is
+// predicted times the noise scale.
+func simulate(c condition, rng *rand.Rand) modes.Series {
+	s := modes.Series{PSFUm: psfUm, LengthUm: c.lengthUm, IntervalS: c.intervalS, ExposureS: c.exposureS,
+		TemperatureK: temperatureK, FreeEnds: true}
+	f := likelihood.Frames{ExposureS: c.exposureS}
+	for i := range c.frames {
+		f.TimesS = append(f.TimesS, float64(i)*c.intervalS)
+		// The light fades by a third.
+		s.NoiseUm3 = append(s.NoiseUm3, c.noiseUm3*(0.85+0.3*float64(i)/float64(c.frames)))
+	}
+	s.TimesS = f.TimesS
+	var amplitude [][]float64
+	for n := 1; 2*math.Pi/modes.BeamWavenumber(n, c.lengthUm) > finestUm; n++ {
+		k := modes.BeamWavenumber(n, c.lengthUm)
+		b := likelihood.Simulate(likelihood.ModeProcess(k, c.lpUm, c.dragPaS, temperatureK), f, rng)
+		for i := range b {
+			b[i] += math.Sqrt(c.noiseScale*s.NoiseUm3[i]) * math.Exp(k*k*psfUm*psfUm/2) * rng.NormFloat64()
+		}
+		amplitude = append(amplitude, b)
+	}
+	const fine = 3 // integration steps per chord
+	steps := int(math.Round(c.lengthUm/spacingUm)) * fine
+	h := c.lengthUm / float64(steps)
+	slopes := make([]float64, steps*len(amplitude))
+	for j := range steps {
+		for n := range amplitude {
+			slopes[j*len(amplitude)+n] = chain.BeamSlope(n+1, (float64(j)+0.5)/float64(steps)) / math.Pow(c.lengthUm, 1.5)
+		}
+	}
+	turned := 2 * math.Pi * rng.Float64()
+	for i := range c.frames {
+		turned += 0.02 * rng.NormFloat64()
+		x, y := 0.0, 0.0
+		curve := modes.Curve{XUm: []float64{0}, YUm: []float64{0}}
+		for j := range steps {
+			angle := turned + bendPerUm*(float64(j)+0.5)*h
+			for n, b := range amplitude {
+				angle += b[i] * slopes[j*len(amplitude)+n]
+			}
+			sin, cos := math.Sincos(angle)
+			x, y = x+h*cos, y+h*sin
+			if j%fine == fine-1 {
+				curve.XUm, curve.YUm = append(curve.XUm, x), append(curve.YUm, y)
+			}
+		}
+		s.Curves = append(s.Curves, curve)
+	}
+	return s
+}
+
+// conditions is the grid: every value of every quantity occurs about equally often, in combinations drawn with a fixed seed.
+func conditions(count int) []condition {
+	rng := rand.New(rand.NewPCG(2024, 1))
+	column := func(values ...float64) []float64 {
+		out := make([]float64, count)
+		for i := range out {
+			out[i] = values[i%len(values)]
+		}
+		rng.Shuffle(count, func(i, j int) { out[i], out[j] = out[j], out[i] })
+		return out
+	}
+	drag, length, lp := column(2.4e-3, 5e-3, 1e-2), column(4, 7, 12, 20), column(2, 6, 12, 20)
+	frames, interval := column(50, 100, 200, 500), column(0.1, 0.3, 1)
+	exposure, noise, scale := column(0.02, 0.1, 1), column(5e-5, 2e-4, 1e-3), column(0.8, 1, 1.25)
+	var out []condition
+	for i := range count {
+		c := condition{drag[i], length[i], lp[i], int(frames[i]), interval[i], math.Min(exposure[i], interval[i]), noise[i], scale[i]}
+		out = append(out, c)
+	}
+	return out
+}
