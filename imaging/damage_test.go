@@ -129,7 +129,8 @@ func TestReadableFrames(t *testing.T) {
 func TestThumbnailsAreSkipped(t *testing.T) {
 	f := rampStack(4, 3, 3)
 	thumb := testPage{tags: greyTags(2, 1, 8, long(254, 1), short(277, 3), short(262, 2)), chunks: [][]byte{make([]byte, 6)}}
-	f.pages = []testPage{thumb, f.pages[0], thumb, f.pages[1], f.pages[2]}
+	mask := testPage{tags: greyTags(4, 3, 1, long(254, 4), short(262, 4)), chunks: [][]byte{make([]byte, 3)}}
+	f.pages = []testPage{thumb, f.pages[0], mask, f.pages[1], f.pages[2]}
 	s := mustOpen(t, f.bytes())
 	if w := s.Info().Warnings; s.Frames() != 3 || len(w) != 1 || w[0] != "2 reduced or mask pages were skipped" {
 		t.Fatalf("%d frames, warnings %q", s.Frames(), w)

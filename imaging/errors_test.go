@@ -86,6 +86,7 @@ func TestOpenErrors(t *testing.T) {
 		{"half a frame", rampStack(4, 3, 3, ascii(270, ome(`SizeX="4" SizeY="3" SizeZ="1" SizeC="2" SizeT="2"`))).bytes(), "imaging: stack.tif: OME-XML says 2 channels x 2 frames (XYCZT), the file has 3 pages, want 4", false},
 		{"channel after channel", rampStack(4, 3, 6, ascii(270, ome(`DimensionOrder="XYTZC" SizeX="4" SizeY="3" SizeZ="1" SizeC="2" SizeT="4"`))).bytes(), "imaging: stack.tif: OME-XML says 2 channels x 4 frames (XYTZC), the file has 6 pages, want 8", false},
 		{"hole", rampStack(4, 3, 3, ascii(270, ome(`SizeX="4" SizeY="3" SizeZ="1" SizeC="1" SizeT="3"`, `<TiffData IFD="0"/><TiffData IFD="1" FirstT="2"/>`))).bytes(), "imaging: stack.tif: OME-XML maps no page to channel 0 of frame 1 (from 0), but does to later frames", true},
+		{"mapped twice", rampStack(4, 3, 3, ascii(270, ome(`SizeX="4" SizeY="3" SizeZ="1" SizeC="1" SizeT="3"`, `<TiffData IFD="0" PlaneCount="3"/><TiffData IFD="0" PlaneCount="3"/>`))).bytes(), "imaging: stack.tif: OME-XML TiffData maps more than the 3 planes of the image", false},
 		{"plane beyond", rampStack(4, 3, 3, ascii(270, ome(`SizeX="4" SizeY="3" SizeZ="1" SizeC="1" SizeT="3"`, `<TiffData IFD="0" FirstT="3"/>`))).bytes(), "imaging: stack.tif: OME-XML TiffData names channel 0, slice 0, frame 3 (from 0), the image has 1, 1, 3", false},
 	} {
 		t.Run(tc.name, func(t *testing.T) {

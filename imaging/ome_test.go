@@ -202,6 +202,17 @@ func TestTiffDataMapping(t *testing.T) {
 	}
 }
 
+// Times and exposures are those of the first channel, whatever the others say.
+func TestTimesOfTheFirstChannel(t *testing.T) {
+	in := openOME(t, 6, ome(`SizeX="4" SizeY="3" SizeZ="1" SizeC="2" SizeT="3"`,
+		`<Plane TheC="0" TheZ="0" TheT="0" DeltaT="1" ExposureTime="0.1"/><Plane TheC="1" TheZ="0" TheT="0" DeltaT="1.5" ExposureTime="0.4"/>`,
+		`<Plane TheC="0" TheZ="0" TheT="1" DeltaT="3" ExposureTime="0.1"/><Plane TheC="1" TheZ="0" TheT="1" DeltaT="3.5" ExposureTime="0.4"/>`,
+		`<Plane TheC="0" TheZ="0" TheT="2" DeltaT="5" ExposureTime="0.1"/><Plane TheC="1" TheZ="0" TheT="2" DeltaT="9.5" ExposureTime="0.4"/>`)).Info()
+	if c := in.Calibration; c.IntervalS.Value != 2 || c.ExposureS.Value != 0.1 || !cmp.Equal(c.TimesS, []float64{0, 2, 4}) || len(in.Warnings) > 0 {
+		t.Errorf("%+v, warnings %q; want times 0, 2, 4 s and exposure 0.1 s", c, in.Warnings)
+	}
+}
+
 func TestSignificantBits(t *testing.T) {
 	if m := openOME(t, 4, ome(fourFrames+`SignificantBits="12"`)).Info().MaxCount; m != 4095 {
 		t.Errorf("largest count %v, want 4095", m)
@@ -224,6 +235,8 @@ func TestResolutionTags(t *testing.T) {
 		{"zero", []testTag{ratio(282, 0, 0), ratio(283, 1, 0), short(296, 3)}, none, nil},
 		{"72 dpi", []testTag{ratio(282, 72, 1), ratio(283, 72, 1)}, none,
 			[]string{"the resolution tags give 72 dots per inch (pixels of 352.8 µm), a screen's or printer's setting and no calibration; they were not used"}},
+		{"96 dpi", []testTag{ratio(282, 96, 1), ratio(283, 96, 1)}, none,
+			[]string{"the resolution tags give 96 dots per inch (pixels of 264.6 µm), a screen's or printer's setting and no calibration; they were not used"}},
 		{"600 dpi", []testTag{ratio(282, 600, 1), ratio(283, 600, 1)}, 42.33333333, nil},
 		{"300 dpi", []testTag{ratio(282, 300, 1), ratio(283, 300, 1)}, none,
 			[]string{"the resolution tags give 300 dots per inch (pixels of 84.67 µm), a screen's or printer's setting and no calibration; they were not used"}},

@@ -11,7 +11,8 @@ const maxPixelUm = 50
 
 // resolutionUm returns the pixel size that the resolution tags give, NaN where they give
 // none: without a unit they hold the ratio of width and height only (TIFF 6.0, section 8),
-// and the 72 or 96 dots per inch that programs fill in are no calibration.
+// and the 72 or 96 dots per inch that programs fill in, pixels of a quarter of a millimetre and
+// more, are no calibration.
 func (p *page) resolutionUm() (Measured, []string) {
 	none := Measured{Value: math.NaN()}
 	var unitUm float64
@@ -28,7 +29,7 @@ func (p *page) resolutionUm() (Measured, []string) {
 	}
 	x := unitUm / p.xres
 	perInch := p.xres * 25400 / unitUm
-	if math.Abs(perInch-72) < 0.5 || math.Abs(perInch-96) < 0.5 || x > maxPixelUm {
+	if x > maxPixelUm {
 		return none, []string{fmt.Sprintf("the resolution tags give %.4g dots per inch (pixels of %.4g µm), a screen's or printer's setting and no calibration; they were not used", perInch, x)}
 	}
 	m := Measured{Value: x, Source: "TIFF resolution tags"}

@@ -117,10 +117,10 @@ func TestWriterRoundsAndCutsOff(t *testing.T) {
 	for _, tc := range []struct {
 		pixelType string
 		top       float32
-	}{{"uint8", 255}, {"uint16", 65535}} {
+	}{{"uint8", 255}, {"uint16", 65535}} { // just above the limit is where a count would wrap to 0
 		path := filepath.Join(t.TempDir(), "a.tif")
-		f := Frame{Width: 7, Height: 1, Pix: []float32{-3, 0.49, 0.5, 1.5, 2.4999, tc.top - 0.4, 2 * tc.top}}
-		if err := writeStack(path, StackMeta{Width: 7, Height: 1, Frames: 1, PixelType: tc.pixelType}, []Frame{f}); err != nil {
+		f := Frame{Width: 8, Height: 1, Pix: []float32{-3, 0.49, 0.5, 1.5, 2.4999, tc.top - 0.4, 2 * tc.top, tc.top + 0.75}}
+		if err := writeStack(path, StackMeta{Width: 8, Height: 1, Frames: 1, PixelType: tc.pixelType}, []Frame{f}); err != nil {
 			t.Fatal(err)
 		}
 		s, err := Open(path, OpenOptions{})
@@ -132,8 +132,8 @@ func TestWriterRoundsAndCutsOff(t *testing.T) {
 		if err := s.ReadFrame(0, 0, &got); err != nil {
 			t.Fatal(err)
 		}
-		want := []float32{0, 0, 1, 2, 2, tc.top, tc.top}
-		samePixels(t, got, 7, 1, func(x, _ int) float32 { return want[x] })
+		want := []float32{0, 0, 1, 2, 2, tc.top, tc.top, tc.top}
+		samePixels(t, got, 8, 1, func(x, _ int) float32 { return want[x] })
 	}
 }
 
