@@ -9,6 +9,7 @@ import (
 	"math"
 	"regexp"
 	"strconv"
+	"strings"
 
 	"gonum.org/v1/plot"
 	"gonum.org/v1/plot/font"
@@ -99,12 +100,20 @@ func inline(file []byte, alt string) template.HTML {
 	return template.HTML(`<svg ` + string(box) + ` role="img" aria-label="` + html.EscapeString(alt) + `">` + string(bytes.TrimSpace(body)))
 }
 
-// points collects those of pairs that a figure can show; on a log axis only positive values.
+// points collects those of pairs that a figure can show. A log axis shows positive values only, as their
+// decimal logarithm: the axis itself is linear, because gonum reserves the wrong room for the label of its own
+// log axis and panics at values that are not positive.
 func points(logX, logY bool, n int, at func(i int) (x, y float64)) plotter.XYs {
 	var xys plotter.XYs
 	for i := range n {
 		x, y := at(i)
 		if finite(x) && finite(y) && (!logX || x > 0) && (!logY || y > 0) {
+			if logX {
+				x = math.Log10(x)
+			}
+			if logY {
+				y = math.Log10(y)
+			}
 			xys = append(xys, plotter.XY{X: x, Y: y})
 		}
 	}
@@ -135,7 +144,7 @@ func addLine(p *plot.Plot, xys plotter.XYs, c color.Color, width float64, dashes
 	}
 }
 
-// addBars adds vertical error bars from low to high, clipped to floor.
+// addBars adds vertical error bars from low to high.
 func addBars(p *plot.Plot, xys plotter.XYs, low, high []float64, c color.Color) {
 	for i, xy := range xys {
 		l := &plotter.Line{XYs: plotter.XYs{{X: xy.X, Y: low[i]}, {X: xy.X, Y: high[i]}}, LineStyle: draw.LineStyle{Color: c, Width: vg.Points(0.8)}}
@@ -148,28 +157,33 @@ var (
 	dotted = []vg.Length{vg.Points(1), vg.Points(2)}
 )
 
-// decades marks a log axis: powers of ten with a label (or 1, 2, 5 where the axis spans less than two), the others without.
+// decades marks an axis of decimal logarithms: powers of ten get a label, on a short axis other multiples too.
 type decades struct{ plain bool }
 
 func (t decades) Ticks(min, max float64) []plot.Tick {
 	var ticks []plot.Tick
-	if !(min > 0) || !(max > min) {
+	labelled := "1"
+	switch span := max - min; {
+	case !(span > 0) || span > 30:
 		return nil
+	case span < 0.75:
+		labelled = "1234568"
+	case span < 1.8:
+		labelled = "125"
 	}
-	few := math.Log10(max/min) < 1.8
-	for e := int(math.Floor(math.Log10(min))); e <= int(math.Ceil(math.Log10(max))); e++ {
+	for e := int(math.Floor(min)); e <= int(math.Ceil(max)); e++ {
 		for m := 1; m < 10; m++ {
-			v := float64(m) * math.Pow(10, float64(e))
-			if v < min*(1-1e-9) || v > max*(1+1e-9) {
+			v := float64(e) + math.Log10(float64(m))
+			if v < min-1e-9 || v > max+1e-9 {
 				continue
 			}
 			label := ""
-			if m == 1 || few && (m == 2 || m == 5) {
-				label = strconv.FormatFloat(v, 'g', 3, 64)
+			if digit := strconv.Itoa(m); strings.Contains(labelled, digit) {
+				label = strconv.FormatFloat(float64(m)*math.Pow(10, float64(e)), 'g', 3, 64)
 				if !t.plain && (e < -2 || e > 3) {
 					label = "10" + superscript(e)
 					if m > 1 {
-						label = strconv.Itoa(m) + "×" + label
+						label = digit + "×" + label
 					}
 				}
 			}

@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"html/template"
+	"image/color"
 	"math"
 
 	"gonum.org/v1/plot"
@@ -31,7 +32,6 @@ func modeFigure(f *job.Filament) (template.HTML, error) {
 		return "", errNothing
 	}
 	p := newPlot("mode number n", "variance of mode amplitude (µm)")
-	p.X.Scale, p.Y.Scale = plot.LogScale{}, plot.LogScale{}
 	p.Y.Tick.Marker = decades{}
 	low, high := math.Inf(1), math.Inf(-1)
 	include := func(v float64) {
@@ -46,17 +46,17 @@ func modeFigure(f *job.Filament) (template.HTML, error) {
 		include(m.ThermalVariance)
 		last = max(last, m.Mode)
 	}
-	low, high = low/2, high*2.5
+	low, high = low/1.8, high*8 // room for the legend
 	var ticks []plot.Tick
 	for m := 1; m <= last; m++ {
 		label := ""
 		if m <= 5 || m == 7 || m%10 == 0 {
 			label = fmt.Sprint(m)
 		}
-		ticks = append(ticks, plot.Tick{Value: float64(m), Label: label})
+		ticks = append(ticks, plot.Tick{Value: math.Log10(float64(m)), Label: label})
 	}
 	p.X.Tick.Marker = plot.ConstantTicks(ticks)
-	p.X.Min, p.X.Max = 0.85, float64(last)*1.15
+	p.X.Min, p.X.Max = math.Log10(0.85), math.Log10(float64(last)*1.15)
 
 	clip := func(v float64) float64 { return math.Max(low, math.Min(high, v)) }
 	line := func(lp float64) plotter.XYs {
@@ -85,10 +85,10 @@ func modeFigure(f *job.Filament) (template.HTML, error) {
 		var xys plotter.XYs
 		var lo, hi []float64
 		for _, m := range f.Modes {
-			if m.Used != used || !positive(m.ThermalVariance) {
+			if m.Used != used || !positive(m.ThermalVariance) || m.Mode < 1 {
 				continue
 			}
-			xys = append(xys, plotter.XY{X: float64(m.Mode), Y: clip(m.ThermalVariance)})
+			xys = append(xys, plotter.XY{X: math.Log10(float64(m.Mode)), Y: math.Log10(clip(m.ThermalVariance))})
 			l, h := low, clip(m.ThermalVariance)
 			if positive(m.LpHighUm) {
 				l = clip(theoryVariance(m.WavelengthUm, m.LpHighUm))
@@ -96,7 +96,7 @@ func modeFigure(f *job.Filament) (template.HTML, error) {
 			if positive(m.LpLowUm) {
 				h = clip(theoryVariance(m.WavelengthUm, m.LpLowUm))
 			}
-			lo, hi = append(lo, l), append(hi, h)
+			lo, hi = append(lo, math.Log10(l)), append(hi, math.Log10(h))
 		}
 		if used {
 			addBars(p, xys, lo, hi, ink)
@@ -105,9 +105,8 @@ func modeFigure(f *job.Filament) (template.HTML, error) {
 			addPoints(p, xys, draw.RingGlyph{}, ink, 2.6, "corrected, not used")
 		}
 	}
-	p.Y.Min, p.Y.Max = low, high
-	p.Legend.Left, p.Legend.Top = true, false
-	p.Legend.YOffs, p.Legend.XOffs = vg.Points(3), vg.Points(4)
+	p.Y.Min, p.Y.Max = math.Log10(low), math.Log10(high)
+	p.Legend.Top = true
 	return render(p, figureWidth, figureHeight, fmt.Sprintf("Filament %d: variance of the tangent-angle modes against the mode number, with theory and noise floor", f.ID))
 }
 
@@ -190,7 +189,7 @@ func methodFigure(f *job.Filament) (template.HTML, error) {
 	}
 	low, high = low/1.25, high*1.25
 	p := newPlot("persistence length (µm)", "")
-	p.X.Scale, p.X.Tick.Marker = plot.LogScale{}, decades{plain: true}
+	p.X.Tick.Marker = decades{plain: true}
 	if high/low < 3 { // wide enough for two labels
 		mid := math.Sqrt(low * high)
 		low, high = mid/1.8, mid*1.8
@@ -202,7 +201,7 @@ func methodFigure(f *job.Filament) (template.HTML, error) {
 		}
 		left := math.Max(f.LpLowUm, low)
 		y0, y1 := -0.6, float64(len(rows))-0.4
-		if right > left {
+		if left, right := math.Log10(left), math.Log10(right); right > left {
 			p.Add(&plotter.Polygon{XYs: []plotter.XYs{{{X: left, Y: y0}, {X: right, Y: y0}, {X: right, Y: y1}, {X: left, Y: y1}}}, Color: band})
 		}
 	}
@@ -217,28 +216,29 @@ func methodFigure(f *job.Filament) (template.HTML, error) {
 		if !positive(right) {
 			right = high
 		}
+		left, right = math.Log10(left), math.Log10(right)
 		if positive(e.Low) || positive(e.High) || math.IsInf(e.High, 1) {
 			addLine(p, plotter.XYs{{X: left, Y: y}, {X: right, Y: y}}, ink, 1.1, nil, "")
 			for _, end := range []float64{e.Low, e.High} {
-				if positive(end) {
+				if end := math.Log10(end); finite(end) {
 					addLine(p, plotter.XYs{{X: end, Y: y - 0.09}, {X: end, Y: y + 0.09}}, ink, 1.1, nil, "")
 				}
 			}
 		}
 		if math.IsInf(e.High, 1) {
-			addPoints(p, plotter.XYs{{X: high, Y: y}}, arrow{}, ink, 3.2, "")
+			addPoints(p, plotter.XYs{{X: math.Log10(high), Y: y}}, arrow{}, ink, 3.2, "")
 		}
 		shape := draw.GlyphDrawer(hollow{})
 		if e.Method == f.LpFrom {
 			shape = draw.CircleGlyph{}
 		}
 		if positive(e.Value) {
-			addPoints(p, plotter.XYs{{X: e.Value, Y: y}}, shape, ink, 3, "")
+			addPoints(p, plotter.XYs{{X: math.Log10(e.Value), Y: y}}, shape, ink, 3, "")
 		}
 	}
 	p.Y.Tick.Marker = plot.ConstantTicks(ticks)
 	p.Y.LineStyle.Width, p.Y.Tick.LineStyle.Width = 0, 0
-	p.X.Min, p.X.Max, p.Y.Min, p.Y.Max = low, high, -0.6, float64(len(rows))-0.4
+	p.X.Min, p.X.Max, p.Y.Min, p.Y.Max = math.Log10(low), math.Log10(high), -0.6, float64(len(rows))-0.4
 	return render(p, figureWidth, figureHeight, fmt.Sprintf("Filament %d: persistence length by each method with its 95 %% interval", f.ID))
 }
 
@@ -246,9 +246,9 @@ func methodFigure(f *job.Filament) (template.HTML, error) {
 type hollow struct{}
 
 func (hollow) DrawGlyph(c *draw.Canvas, s draw.GlyphStyle, at vg.Point) {
-	fill := s
-	fill.Color = band
-	draw.CircleGlyph{}.DrawGlyph(c, fill, at)
+	c.SetColor(color.White)
+	draw.CircleGlyph{}.DrawGlyph(c, s, at)
+	c.SetColor(s.Color)
 	draw.RingGlyph{}.DrawGlyph(c, s, at)
 }
 

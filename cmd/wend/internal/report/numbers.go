@@ -25,7 +25,7 @@ func roundInterval(value, low, high float64) valueInterval {
 	}
 	exponent := 0
 	power := ""
-	if scale > 0 && (scale < 1e-3 || scale >= 1e6) {
+	if scale > 0 && (scale < 1e-2 || scale >= 1e6) {
 		exponent = int(math.Floor(math.Log10(scale)))
 		power = " × 10" + superscript(exponent)
 	}
@@ -99,6 +99,14 @@ func digits(v float64, n int) string {
 		return roundTo(v/math.Pow(10, float64(e)), n-1) + " × 10" + superscript(e)
 	}
 	return roundTo(v, max(0, decimalsFor(a, n)))
+}
+
+// plain prints a setting: up to six significant digits, without zeros at the end.
+func plain(v float64) string {
+	if !finite(v) {
+		return none
+	}
+	return strconv.FormatFloat(v, 'g', 6, 64)
 }
 
 func superscript(n int) string {

@@ -90,7 +90,7 @@ func pictureSVG(o *imaging.Overlay) (template.HTML, error) {
 		n := len(t.X) - 1
 		fmt.Fprintf(&b, `<circle cx="%.1f" cy="%.1f" r="%.1f" fill="%s" stroke="%s" stroke-width="%.1f"/>`, t.X[n], t.Y[n], 3.6*u, ink, colour, 1.6*u)
 		fmt.Fprintf(&b, `<circle cx="%.1f" cy="%.1f" r="%.1f" fill="%s" stroke="%s" stroke-width="%.1f"/>`, t.X[0], t.Y[0], 4*u, colour, ink, u)
-		fmt.Fprintf(&b, `<text x="%.1f" y="%.1f" font-size="%.1f" font-weight="bold" text-anchor="middle" fill="%s" stroke="%s" stroke-width="%.1f" paint-order="stroke">%s</text>`,
+		fmt.Fprintf(&b, `<text class="label" x="%.1f" y="%.1f" font-size="%.1f" font-weight="bold" text-anchor="middle" fill="%s" stroke="%s" stroke-width="%.1f" paint-order="stroke">%s</text>`,
 			t.LabelX, t.LabelY+6.5*u, 20*u, colour, ink, 4*u, html.EscapeString(t.Label))
 	}
 	base := float64(o.Height) + strip*u/2

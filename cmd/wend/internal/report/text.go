@@ -131,8 +131,8 @@ func methodsParagraph(r *job.Result) []string {
 	}
 	var b strings.Builder
 	fmt.Fprintf(&b, "Movies of %s of %d × %d pixels (%s µm per pixel%s) were analysed with wend %s (%s ridge filter).",
-		plural(tables.Summarise(r).Counts.Frames, "frame", "frames"), r.Info.Width, r.Info.Height, digits(s.PixelUm, 4), timing(r), r.Version, r.RidgeImplementation)
-	b.WriteString(" In each frame, candidate lines were found on a multi-scale ridge map thresholded in units of the image's own noise, and the centreline of each filament was fitted to the pixels as a smooth curve with a Gaussian cross-section, which gives its position below the pixel size together with the error.")
+		plural(tables.Summarise(r).Counts.Frames, "frame", "frames"), r.Info.Width, r.Info.Height, plain(s.PixelUm), timing(r), r.Version, r.RidgeImplementation)
+	b.WriteString(" In each frame, filaments were found on a ridge map (second derivatives of the smoothed image, in units of the image's own noise), and the centreline of each was fitted to all of its pixels at once as a cubic B-spline blurred by a Gaussian, by least squares weighted with the camera noise, which gives its position together with the error.")
 	if seHigh > 0 {
 		fmt.Fprintf(&b, " The median standard error of a contour point across the line was %s nm.", span(seLow, seHigh))
 	}
@@ -174,17 +174,17 @@ func timing(r *job.Result) string {
 	s := &r.Settings
 	var parts string
 	if positive(s.IntervalS) {
-		parts += fmt.Sprintf(", one frame every %s s", digits(s.IntervalS, 3))
+		parts += fmt.Sprintf(", one frame every %s s", plain(s.IntervalS))
 	}
 	if positive(s.ExposureS) {
-		parts += fmt.Sprintf(", exposure %s s", digits(s.ExposureS, 3))
+		parts += fmt.Sprintf(", exposure %s s", plain(s.ExposureS))
 	}
 	if finite(s.TemperatureC) {
 		assumed := ""
 		if strings.Contains(s.Sources["temperature_c"], "assumed") || strings.Contains(s.Sources["temperature_c"], "default") {
 			assumed = ", assumed"
 		}
-		parts += fmt.Sprintf(", %s °C%s", digits(s.TemperatureC, 3), assumed)
+		parts += fmt.Sprintf(", %s °C%s", plain(s.TemperatureC), assumed)
 	}
 	return parts
 }

@@ -21,6 +21,7 @@ type page struct {
 	Rows                                       []summaryRow
 	Picture                                    template.HTML
 	PictureNote                                string
+	Flags                                      []codeRow // those in the table, once each
 	Warnings                                   []job.Warning
 	Filaments                                  []filamentView
 	Drops                                      []dropRow
@@ -105,6 +106,9 @@ func newPage(r *job.Result) *page {
 		p.DropTotal += v.Dropped
 		p.ContourTotal += v.All
 	}
+	if !few {
+		p.Flags = flagRows(r)
+	}
 	p.Drops = dropRows(drops)
 	p.Codes = codeGroups()
 	methods := strings.Join(p.Methods, " ")
@@ -114,6 +118,27 @@ func newPage(r *job.Result) *page {
 		}
 	}
 	return p
+}
+
+// flagRows lists the flags of all filaments once, in the order of the list of codes, unknown ones last by name.
+func flagRows(r *job.Result) []codeRow {
+	left := map[string]int{}
+	for i := range r.Filaments {
+		for _, flag := range r.Filaments[i].Flags {
+			left[flag]++
+		}
+	}
+	var rows []codeRow
+	for _, c := range tables.Codes() {
+		if c.Kind == tables.KindFlag && left[c.Code] > 0 {
+			rows = append(rows, codeRow{c.Code, c.Meaning})
+			delete(left, c.Code)
+		}
+	}
+	for _, code := range sortedKeys(left) {
+		rows = append(rows, codeRow{code, meaning(tables.KindFlag, code)})
+	}
+	return rows
 }
 
 var citations = []struct{ key, text string }{
@@ -254,7 +279,7 @@ func settings(r *job.Result) []settingRow {
 		if p == nil {
 			return empty
 		}
-		return digits(*p, 5)
+		return plain(*p)
 	}
 	rows := []settingRow{
 		{"pixel size (µm)", number(s.PixelUm.Value, none), s.PixelUm.Source},
@@ -269,7 +294,7 @@ func settings(r *job.Result) []settingRow {
 		{"offset (counts)", number(s.Offset.Value, "estimated"), s.Offset.Source},
 	}
 	if c := s.ChamberUm.Value; c != nil && *c > 0 {
-		rows = append(rows, settingRow{"chamber depth (µm)", digits(*c, 3), s.ChamberUm.Source})
+		rows = append(rows, settingRow{"chamber depth (µm)", plain(*c), s.ChamberUm.Source})
 	}
 	if s.ReadableFrames.Value {
 		rows = append(rows, settingRow{"intact pages of a damaged stack only", "yes", s.ReadableFrames.Source})

@@ -186,19 +186,26 @@ func TestSummaryHasNoPath(t *testing.T) {
 	}
 }
 
-// Every code of the tracer must have its sentence.
-func TestEveryTraceCodeIsExplained(t *testing.T) {
+// Every code of the tracer and of the analysis must have its sentence.
+func TestEveryCodeIsExplained(t *testing.T) {
 	found := 0
-	for typ, kind := range map[string]Kind{"Reason": KindFrame, "End": KindEnd} {
-		for _, code := range constants(t, "../../../../trace", typ) {
+	for _, source := range []struct {
+		dir, prefix string
+		kind        Kind
+	}{
+		{"trace", "Reason", KindFrame}, {"trace", "End", KindEnd},
+		{"modes", "Flag", KindFlag}, {"modes", "Reason", KindMode}, {"modes", "Method", KindMethod}, {"modes", "From", KindMethod},
+		{"modes", "Thermal", KindThermal}, {"modes", "Confinement", KindConfinement},
+	} {
+		for _, code := range constants(t, "../../../../"+source.dir, source.prefix) {
 			found++
-			if _, ok := Meaning(kind, code); !ok {
-				t.Errorf("no sentence for %s %q", kind, code)
+			if _, ok := Meaning(source.kind, code); !ok {
+				t.Errorf("no sentence for %s %q of package %s", source.kind, code, source.dir)
 			}
 		}
 	}
-	if found < 13 {
-		t.Errorf("found %d codes in trace, want at least 13", found)
+	if found < 13 { // those of trace alone
+		t.Errorf("found %d codes, want at least 13", found)
 	}
 	seen := map[Code]bool{}
 	for _, c := range Codes() {
@@ -213,8 +220,8 @@ func TestEveryTraceCodeIsExplained(t *testing.T) {
 	}
 }
 
-// constants lists the string constants of a named type in a package's source.
-func constants(t *testing.T, dir, typ string) []string {
+// constants lists the string constants in a package's source whose name is prefix and then a capital letter.
+func constants(t *testing.T, dir, prefix string) []string {
 	t.Helper()
 	names, err := filepath.Glob(filepath.Join(dir, "*.go"))
 	if err != nil {
@@ -226,21 +233,28 @@ func constants(t *testing.T, dir, typ string) []string {
 		if err != nil {
 			t.Fatal(err)
 		}
-		ast.Inspect(file, func(n ast.Node) bool {
-			spec, ok := n.(*ast.ValueSpec)
-			if !ok {
-				return true
+		for _, d := range file.Decls {
+			decl, ok := d.(*ast.GenDecl)
+			if !ok || decl.Tok != token.CONST {
+				continue
 			}
-			if id, ok := spec.Type.(*ast.Ident); ok && id.Name == typ {
-				for _, v := range spec.Values {
-					if lit, ok := v.(*ast.BasicLit); ok && lit.Kind == token.STRING {
-						s, _ := strconv.Unquote(lit.Value)
-						values = append(values, s)
+			for _, s := range decl.Specs {
+				spec := s.(*ast.ValueSpec)
+				for i, id := range spec.Names {
+					rest, ok := strings.CutPrefix(id.Name, prefix)
+					if !ok || rest == "" || rest[0] < 'A' || rest[0] > 'Z' || i >= len(spec.Values) {
+						continue
+					}
+					if lit, ok := spec.Values[i].(*ast.BasicLit); ok && lit.Kind == token.STRING {
+						text, err := strconv.Unquote(lit.Value)
+						if err != nil {
+							t.Fatal(err)
+						}
+						values = append(values, text)
 					}
 				}
 			}
-			return true
-		})
+		}
 	}
 	return values
 }
