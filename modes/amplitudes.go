@@ -10,7 +10,8 @@ import (
 type amplitudes struct {
 	frames       likelihood.Frames
 	temperatureK float64
-	lengthUm     float64
+	lengthUm     float64 // contour length in use, see rescale
+	measuredUm   float64 // contour length that the contours show
 	curves       []Curve
 	chords       []chords
 	noiseUm3     []float64 // P of each frame
@@ -26,7 +27,7 @@ const noiseFloorUm3 = 1e-8
 
 // measure takes the usable frames of s: a finite ascending time, a curve of three or more distinct points and a noise density.
 func measure(s Series, o Options) amplitudes {
-	a := amplitudes{temperatureK: s.TemperatureK, lengthUm: s.LengthUm, psfUm: math.Max(0, s.PSFUm)}
+	a := amplitudes{temperatureK: s.TemperatureK, lengthUm: s.LengthUm, measuredUm: s.LengthUm, psfUm: math.Max(0, s.PSFUm)}
 	a.frames.ExposureS = math.Max(0, s.ExposureS)
 	if !(s.LengthUm > 0) || math.IsInf(s.LengthUm, 0) || math.IsNaN(s.PSFUm) || math.IsInf(s.PSFUm, 0) {
 		return a

@@ -32,8 +32,7 @@ func Analyse(s Series, o Options) Result {
 	if a.fitted < 3 {
 		r.flag(FlagShort)
 	}
-	d := a.data(0, len(a.frames.TimesS))
-	fit, err := likelihood.Fit(d, o.Likelihood)
+	fit, err := likelihood.Fit(a.data(0, len(a.frames.TimesS)), o.Likelihood)
 	if err != nil {
 		r.flag(FlagFit)
 		return r
@@ -49,6 +48,7 @@ func Analyse(s Series, o Options) Result {
 		r.flag(FlagLowerBound)
 	} else {
 		t.lpUm = fit.LpUm.Value
+		t = a.rescale(&fit, t)
 	}
 	r.recommend(fit, bound)
 	if fit.AtDragLimit {
@@ -157,6 +157,36 @@ func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series
 		note = "the ends are as far apart as the contour is long, within the noise"
 	}
 	r.add(QuantityLp, MethodDistance, distance.lpUm, distance.low, distance.high, note)
+}
+
+// rescale lengthens the contour by what the contours do not show, and with it the fit: for lengths that grow by a factor a at unchanged times
+// the same amplitudes, as angles, mean a persistence length a times larger and a drag a³ times smaller. It alters a
+// and fit and returns t for them.
+func (a *amplitudes) rescale(fit *likelihood.Result, t theory) theory {
+	const most = 1.2 // beyond it the theory of small hidden undulations is no guide
+	scaled := t
+	factor := 1.0
+	for range 4 {
+		factor = math.Min(most, math.Max(1/most, 1+a.missingLength(scaled)/a.measuredUm))
+		scaled.lpUm, scaled.dragPaS = t.lpUm*factor, t.dragPaS/(factor*factor*factor)
+	}
+	a.lengthUm *= factor
+	for m := range a.k {
+		a.k[m] /= factor
+		for i := range a.b[m] {
+			a.b[m][i] *= math.Pow(factor, 1.5)
+		}
+	}
+	scale := func(i *likelihood.Interval, by float64) { i.Value, i.Low, i.High = i.Value*by, i.Low*by, i.High*by }
+	drag := 1 / (factor * factor * factor)
+	scale(&fit.LpUm, factor)
+	scale(&fit.DragPaS, drag)
+	fit.PeakLpUm *= factor
+	for i := range fit.Tracks {
+		fit.Tracks[i].LpUm *= factor
+		fit.Tracks[i].DragPaS *= drag
+	}
+	return scaled
 }
 
 // bend returns the root mean square over frames of the angle, rad, by which the tangent departs from its mean along the contour.

@@ -32,34 +32,17 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 	}
 	// Across the line the two ends err by P/L·(1+3) from the rigid modes and 4/L from each bending mode.
 	noiseUm3 := t.noiseScale * mean(a.noiseUm3)
-	endVariance, noiseLength := 4*noiseUm3/l, 0.0
-	steep := make([]float64, theoryModes) // ∫ψ′² ds, 1/µm²
-	for m := range steep {
-		steep[m] = slopeSquare(m+1) / (l * l)
-		if m < a.resolved {
-			noise := noiseUm3 * a.noiseGain(m+1)
-			endVariance += 4 * noise / l
-			noiseLength += noise * steep[m] / 2
-		}
+	endVariance := 4 * noiseUm3 / l
+	for m := range a.resolved {
+		endVariance += 4 * noiseUm3 * a.noiseGain(m+1) / l
 	}
 	r2 -= 2 * endVariance
-	hidden := func(lpUm float64) float64 {
-		sum := 0.0
-		own := theory{lpUm: lpUm, dragPaS: t.dragPaS}
-		for m := range steep {
-			k := BeamWavenumber(m+1, l)
-			shown := 0.0
-			if m < a.resolved {
-				shown = chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, own))
-			}
-			sum += steep[m] / (2 * lpUm * math.Pow(k, 4)) * (1 - shown)
-		}
-		// The rest, with ∫ψ′² → k² and k → (m+½)π/L.
-		return sum + l*l/(2*math.Pi*math.Pi*lpUm*(theoryModes+1))
+	length := func(lpUm float64) float64 {
+		return a.measuredUm + a.missingLength(theory{lpUm: lpUm, dragPaS: t.dragPaS, noiseScale: t.noiseScale})
 	}
 	missing := func(x float64) float64 { // falls with Lp where it crosses zero
 		lp := math.Exp(x)
-		return r2 - chain.MeanSquareEndToEnd2D(lp, l-noiseLength+hidden(lp))
+		return r2 - chain.MeanSquareEndToEnd2D(lp, length(lp))
 	}
 	const ceiling, step = 16.0, 0.05
 	x := ceiling
@@ -90,13 +73,13 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 		variance = 0
 	}
 	for m, s := range a.turnSpreads(t) {
-		e := steep[m] / 2
+		e := slopeSquare(m+1) / (2 * l * l)
 		if m%2 == 1 { // even modes: ψ(L) = -ψ(0) = ∓2/√L
 			e -= 8 / (l * l)
 		}
 		variance += s * e * e
 	}
-	contraction := l + hidden(fit.lpUm) - noiseLength - math.Sqrt(math.Max(0, r2))
+	contraction := length(fit.lpUm) - math.Sqrt(math.Max(0, r2))
 	if contraction > 0 && variance > 0 {
 		low, high := scaledInterval(1, variance/(contraction*contraction))
 		fit.low, fit.high = fit.lpUm/high, fit.lpUm/low
@@ -104,8 +87,41 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 	return fit
 }
 
+// missingLength returns how much longer, µm, the contour is than the contours show: by the undulations that exposure and optics
+// hide, less what noise adds.
+func (a amplitudes) missingLength(t theory) float64 {
+	noiseUm3 := t.noiseScale * mean(a.noiseUm3)
+	sum := 0.0
+	for m := range theoryModes {
+		k := BeamWavenumber(m+1, a.lengthUm)
+		shown, noise := 0.0, 0.0
+		if m < a.resolved {
+			shown = chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, t))
+			noise = noiseUm3 * a.noiseGain(m+1)
+		}
+		sum += slopeSquare(m+1) / (2 * a.lengthUm * a.lengthUm) * ((1-shown)/(t.lpUm*math.Pow(k, 4)) - noise)
+	}
+	// The finer modes, with ∫ψ′² → k² and k → (m+½)π/L.
+	return sum + a.lengthUm*a.lengthUm/(2*math.Pi*math.Pi*t.lpUm*(theoryModes+1))
+}
+
+// slopeSquares holds ∫ψ_m′² of the first modes of a filament of unit length.
+var slopeSquares = func() (s [theoryModes]float64) {
+	for m := range s {
+		s[m] = integrateSlopeSquare(m + 1)
+	}
+	return s
+}()
+
 // slopeSquare returns ∫ψ_m′² over a filament of unit length.
 func slopeSquare(m int) float64 {
+	if m <= theoryModes {
+		return slopeSquares[m-1]
+	}
+	return integrateSlopeSquare(m)
+}
+
+func integrateSlopeSquare(m int) float64 {
 	const cells = 400
 	sum := 0.0
 	for i := range cells {

@@ -109,28 +109,44 @@ func Fit(d Data, o Options) (Result, error) {
 	return r, nil
 }
 
-// search climbs from the best places of a coarse grid, since blur and slowness can each
-// explain a weak fluctuation and the likelihood may have two peaks.
+// search climbs from the best place of a coarse grid, and from the best one at a drag well away from that, since blur and
+// slowness can each explain a weak fluctuation and the likelihood may have two peaks.
 func search(f func(vector) float64, b bounds) (vector, float64) {
-	var at vector
-	top := math.Inf(-1)
+	type place struct {
+		at    vector
+		value float64
+	}
+	var starts []place
 	for z := math.Log(1e-3); z < math.Log(2); z += 1.5 {
-		var start vector
-		high := math.Inf(-1)
+		best := place{value: math.Inf(-1)}
 		for x := math.Log(0.03); x < math.Log(5e4); x += 1.1 {
-			p := b.clamp(vector{x, z, 0})
-			if v := f(p); v > high {
-				start, high = p, v
+			at := b.clamp(vector{x, z, 0})
+			if v := f(at); v > best.value {
+				best = place{at, v}
 			}
 		}
-		if high < top-60 {
-			continue
-		}
-		if p, v := maximise(f, start, [params]bool{true, true, true}, b); v > top+1e-6 {
-			at, top = p, v
+		starts = append(starts, best)
+	}
+	top := starts[0]
+	for _, s := range starts {
+		if s.value > top.value {
+			top = s
 		}
 	}
-	return at, top
+	other := place{value: math.Inf(-1)}
+	for _, s := range starts {
+		if s.value > other.value && math.Abs(s.at[paramDrag]-top.at[paramDrag]) > 2 {
+			other = s
+		}
+	}
+	all := [params]bool{true, true, true}
+	at, value := maximise(f, top.at, all, b)
+	if !math.IsInf(other.value, -1) {
+		if p, v := maximise(f, other.at, all, b); v > value+1e-6 {
+			at, value = p, v
+		}
+	}
+	return at, value
 }
 
 // interval turns a profile into an interval at the given drop.

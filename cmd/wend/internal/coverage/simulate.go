@@ -27,7 +27,8 @@ const (
 )
 
 // simulate draws the contours of a movie: exposure-averaged thermal modes about a bent shape, and noise of the density that is
-// predicted times the noise scale.
+// predicted times the noise scale. A contour is shorter than the filament by the undulations that the exposure
+// averaged away, and longer by what noise adds, both entered at their mean.
 func simulate(c condition, rng *rand.Rand) modes.Series {
 	s := modes.Series{PSFUm: psfUm, LengthUm: c.lengthUm, IntervalS: c.intervalS, ExposureS: c.exposureS,
 		TemperatureK: temperatureK, FreeEnds: true}
@@ -39,14 +40,20 @@ func simulate(c condition, rng *rand.Rand) modes.Series {
 	}
 	s.TimesS = f.TimesS
 	var amplitude [][]float64
+	missing := 0.0 // 1 less the ratio of the two lengths
 	for n := 1; 2*math.Pi/modes.BeamWavenumber(n, c.lengthUm) > finestUm; n++ {
 		k := modes.BeamWavenumber(n, c.lengthUm)
 		b := likelihood.Simulate(likelihood.ModeProcess(k, c.lpUm, c.dragPaS, temperatureK), f, rng)
+		missing += hiddenShare(n, k, c)
 		for i := range b {
 			b[i] += math.Sqrt(c.noiseScale*s.NoiseUm3[i]) * math.Exp(k*k*psfUm*psfUm/2) * rng.NormFloat64()
 		}
 		amplitude = append(amplitude, b)
 	}
+	for n := len(amplitude) + 1; n <= 60; n++ {
+		missing += hiddenShare(n, modes.BeamWavenumber(n, c.lengthUm), c)
+	}
+	s.LengthUm = c.lengthUm * (1 - missing)
 	const fine = 3 // integration steps per chord
 	steps := int(math.Round(c.lengthUm/spacingUm)) * fine
 	h := c.lengthUm / float64(steps)
@@ -67,7 +74,7 @@ func simulate(c condition, rng *rand.Rand) modes.Series {
 				angle += b[i] * slopes[j*len(amplitude)+n]
 			}
 			sin, cos := math.Sincos(angle)
-			x, y = x+h*cos, y+h*sin
+			x, y = x+h*(1-missing)*cos, y+h*(1-missing)*sin
 			if j%fine == fine-1 {
 				curve.XUm, curve.YUm = append(curve.XUm, x), append(curve.YUm, y)
 			}
@@ -75,6 +82,22 @@ func simulate(c condition, rng *rand.Rand) modes.Series {
 		s.Curves = append(s.Curves, curve)
 	}
 	return s
+}
+
+// hiddenShare returns the share of the contour length that beam mode n of wavenumber k hides, less what its noise adds.
+func hiddenShare(n int, k float64, c condition) float64 {
+	p := likelihood.ModeProcess(k, c.lpUm, c.dragPaS, temperatureK)
+	lost := p.Variance
+	if 2*math.Pi/k > finestUm {
+		lost -= likelihood.Covariance(p, c.exposureS, 0) + c.noiseScale*c.noiseUm3*math.Exp(k*k*psfUm*psfUm)
+	}
+	const cells = 400
+	sum := 0.0
+	for i := range cells {
+		d := chain.BeamSlope(n, (float64(i)+0.5)/cells)
+		sum += d * d / cells
+	}
+	return lost * sum / (2 * math.Pow(c.lengthUm, 3))
 }
 
 // conditions is the grid: every value of every quantity occurs about equally often, in combinations drawn with a fixed seed.
