@@ -109,7 +109,7 @@ func parseOME(text string) (*omeImage, error) {
 				}
 			}
 		}
-		if pixels != 1 || o.images > 1 {
+		if pixels != 1 {
 			continue
 		}
 		switch e.Name.Local {
