@@ -124,7 +124,6 @@ func Summarise(r *job.Result) Summary {
 	for _, w := range r.Warnings {
 		warnings = append(warnings, WarningEntry(w))
 	}
-	frames := source("frames")
 	return Summary{
 		Name: r.Name,
 		Input: InputSummary{File: BaseName(r.StackPath), SHA256: r.SHA256, Format: r.Info.Format, PixelType: r.Info.PixelType,
@@ -137,7 +136,7 @@ func Summarise(r *job.Result) Summary {
 			ExposureS: float("exposure_s", s.ExposureS), TemperatureC: float("temperature_c", s.TemperatureC),
 			Setting: SettingValue[string]{s.Setting, source("setting")}, Channel: SettingValue[int]{s.Channel, source("channel")},
 			ChamberUm: float("chamber_um", s.ChamberUm), MinLengthUm: float("min_length_um", s.MinLengthUm),
-			FirstFrame: SettingValue[int]{s.FirstFrame, frames}, LastFrame: SettingValue[int]{s.LastFrame, frames},
+			FirstFrame: SettingValue[int]{s.FirstFrame, source("first_frame")}, LastFrame: SettingValue[int]{s.LastFrame, source("last_frame")},
 			Gain: float("gain", s.Gain), Offset: float("offset", s.Offset),
 			ReadableFrames: SettingValue[bool]{s.ReadableFrames, source("readable_frames")},
 		},
@@ -192,7 +191,7 @@ func (s *Summary) fill(r *job.Result) {
 		LastFrame: set.LastFrame.Value, Gain: value(set.Gain.Value), Offset: value(set.Offset.Value), ReadableFrames: set.ReadableFrames.Value,
 		Sources: map[string]string{"pixel_um": set.PixelUm.Source, "interval_s": set.IntervalS.Source, "exposure_s": set.ExposureS.Source,
 			"temperature_c": set.TemperatureC.Source, "setting": set.Setting.Source, "channel": set.Channel.Source,
-			"chamber_um": set.ChamberUm.Source, "min_length_um": set.MinLengthUm.Source, "frames": set.FirstFrame.Source,
+			"chamber_um": set.ChamberUm.Source, "min_length_um": set.MinLengthUm.Source, "first_frame": set.FirstFrame.Source, "last_frame": set.LastFrame.Source,
 			"gain": set.Gain.Source, "offset": set.Offset.Source, "readable_frames": set.ReadableFrames.Source}}
 	r.Camera = imaging.Camera{GainCounts: value(s.Camera.GainCounts), OffsetCounts: value(s.Camera.OffsetCounts),
 		ReadVariance: value(s.Camera.ReadVariance), Source: s.Camera.Source}
