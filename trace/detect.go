@@ -81,7 +81,7 @@ func (d *detector) component(m *ridge.Map, start int, high, scale float64) (cand
 		}
 		return candidate{}, false
 	}
-	sort.Ints(list)
+	list = d.crest(m, list)
 	list = thin(d.mask, w, list)
 	if len(list) == 0 { // a blob of four pixels thins to nothing
 		return candidate{}, false
@@ -97,6 +97,35 @@ func (d *detector) component(m *ridge.Map, start int, high, scale float64) (cand
 	}
 	c.path = smooth(c.path, 1.2*scale)
 	return c, true
+}
+
+// crest keeps, of a component, the pixels connected to the strongest one through pixels of at least a
+// tenth of the strength that is usual in it: around a bright line the map is above the noise far out,
+// where its directions mean nothing. The others leave the mask. The result is in ascending order.
+func (d *detector) crest(m *ridge.Map, list []int) []int {
+	strength := make([]float64, len(list))
+	strongest := list[0]
+	for k, i := range list {
+		strength[k] = float64(m.Strength[i])
+		if m.Strength[i] > m.Strength[strongest] {
+			strongest = i
+		}
+	}
+	usual := quantile(strength, 0.8)
+	for _, i := range list {
+		d.mask[i] = float64(m.Strength[i]) >= usual/10
+	}
+	d.farthest(d.mask, strongest)
+	kept := list[:0]
+	for _, i := range list {
+		if d.mask[i] && d.seen[i] == d.search {
+			kept = append(kept, i)
+		} else {
+			d.mask[i] = false
+		}
+	}
+	sort.Ints(kept)
+	return kept
 }
 
 // centred is the place of the ridge's crest near pixel i.

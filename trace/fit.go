@@ -14,6 +14,9 @@ import (
 const (
 	// knotsPerWidth is the distance between the knots of the centreline in line widths.
 	knotsPerWidth = 4.0
+	// ResolvedWidths is the shortest wavelength that a contour carries unchanged, in line widths
+	// (the standard deviation of the profile): a little over two knots.
+	ResolvedWidths = 2.3 * knotsPerWidth
 	// brightnessKnots and backgroundKnots are the distances between the knots of the line's
 	// brightness and of the background beside it, in line widths.
 	brightnessKnots = 8
@@ -21,6 +24,11 @@ const (
 	// nodeSpacing is the distance between the points whose Gaussians add up to the line, in
 	// line widths. The trapezoid sum of Gaussians h apart has a ripple of 2·exp(-2π²s²/h²): 1e-15 here.
 	nodeSpacing = 0.75
+	// smearReach is how far an end's own smear reaches along the line, in line widths. A free end
+	// moves twice as far as the interior during an exposure (exactly four times the mean square).
+	smearReach = 6.0
+	// widest is the largest width of the profile at an end, in line widths.
+	widest = 2.2
 	// reach is how far from the line pixels are used and how far a Gaussian is drawn, in line widths.
 	reach = 4.0
 )
@@ -72,6 +80,7 @@ type fitter struct {
 	ends           [2]float64 // of the reference path
 	endPoint       [2]xy      // where the ends are now
 	endLight       [2]float64 // brightness there
+	endVariance    [2]float64 // of the profile there
 
 	shape     cubic
 	light     cubic
@@ -80,6 +89,7 @@ type fitter struct {
 	lightIdx  []int
 	underIdx  []int
 	endsIdx   [2]int
+	smearIdx  [2]int // extra variance of the profile at the ends
 	size      int
 	bandwidth int
 
@@ -95,9 +105,11 @@ type fitter struct {
 	widthGradient  float64
 	chi2           float64
 	pixels         []pixel
-	nearest        []int32   // per image pixel, index into pixels + 1, for the current band
-	slopes         []float64 // of the pixel in hand, by parameter
-	alongX, alongY []float64 // Gaussians of the nodes, span long each
+	nearest        []int32      // per image pixel, index into pixels + 1, for the current band
+	variance       []float64    // of the profile at each node, pixels²
+	smear          [][2]float64 // share of each end's extra variance there
+	slopes         []float64    // of the pixel in hand, by parameter
+	alongX, alongY []float64    // Gaussians of the nodes, span long each
 	corner         [][2]float64
 	span           int
 	lightNow       []float64
@@ -122,16 +134,19 @@ func (f *fitter) fit(frame, background imaging.Frame, excluded func(pixel int) b
 	length := arcLengths(path)[len(path)-1]
 	ends := [2]float64{0, length}
 	var light, under []float64
+	var smear [2]float64
 	for pass := 0; ; pass++ {
 		if err := f.prepare(frame, background, excluded, path, ends); err != nil {
 			return fitted{}, err
 		}
 		f.startFrom(light, under)
+		f.parameters[f.smearIdx[0]], f.parameters[f.smearIdx[1]] = smear[0], smear[1]
 		moved, err := f.iterate(pass)
 		if err != nil {
 			return fitted{}, err
 		}
 		light, under = f.pick(f.lightIdx), f.pick(f.underIdx)
+		smear = [2]float64(f.pick(f.smearIdx[:]))
 		path = f.centreline()
 		ends = [2]float64{0, arcLengths(path)[len(path)-1]}
 		if pass > 0 && moved < 0.3*f.width || pass == passes-1 {
@@ -183,9 +198,10 @@ func (f *fitter) layBases() {
 	f.shapeIdx = resizeInt(f.shapeIdx, f.shape.size())
 	f.lightIdx = resizeInt(f.lightIdx, f.light.size())
 	f.underIdx = resizeInt(f.underIdx, f.under.size())
-	f.size = f.shape.size() + f.light.size() + f.under.size() + 2
+	f.size = f.shape.size() + f.light.size() + f.under.size() + 4
 	places := make([]place, 0, f.size)
-	places = append(places, place{e0, &f.endsIdx[0]}, place{e1, &f.endsIdx[1]})
+	places = append(places, place{e0, &f.endsIdx[0]}, place{e0, &f.smearIdx[0]},
+		place{e1, &f.endsIdx[1]}, place{e1, &f.smearIdx[1]})
 	for k := range f.shapeIdx {
 		places = append(places, place{f.shape.centre(k), &f.shapeIdx[k]})
 	}
@@ -289,6 +305,13 @@ func (f *fitter) layPixels(frame, background imaging.Frame, excluded func(pixel 
 // on; nearest is the node whose background it has.
 func (f *fitter) touched(first, last, nearest int) (lo, hi int) {
 	under := f.underBasis[nearest].first
+	defer func() {
+		for k, e := range f.ends {
+			if f.at[first] < e+smearReach*f.width && f.at[last] > e-smearReach*f.width {
+				lo, hi = min(lo, f.smearIdx[k]), max(hi, f.smearIdx[k])
+			}
+		}
+	}()
 	lo = min(f.shapeIdx[f.shapeBasis[first].first], f.lightIdx[f.lightBasis[first].first], f.underIdx[under])
 	hi = max(f.shapeIdx[f.shapeBasis[last].first+3], f.lightIdx[f.lightBasis[last].first+3], f.underIdx[under+1])
 	return lo, hi
@@ -410,7 +433,11 @@ func (f *fitter) largest(p []float64) float64 {
 func (f *fitter) place() {
 	e0, e1 := f.parameters[f.endsIdx[0]], f.parameters[f.endsIdx[1]]
 	step := f.at[1] - f.at[0]
-	f.lightNow = resize(f.lightNow, len(f.at))
+	f.lightNow, f.variance = resize(f.lightNow, len(f.at)), resize(f.variance, len(f.at))
+	if cap(f.smear) < len(f.at) {
+		f.smear = make([][2]float64, len(f.at))
+	}
+	f.smear = f.smear[:len(f.at)]
 	for j, s := range f.at {
 		u := 0.0
 		b := &f.shapeBasis[j]
@@ -427,11 +454,21 @@ func (f *fitter) place() {
 		left := min(max((s-e0)/step+0.5, 0), 1)
 		right := min(max((e1-s)/step+0.5, 0), 1)
 		f.weight[j] = left * right
+		f.variance[j] = f.width * f.width
+		for k, e := range f.ends {
+			f.smear[j][k] = 0
+			if d := math.Abs(s - e); d < smearReach*f.width {
+				f.smear[j][k] = sq(1 - sq(d/(smearReach*f.width)))
+				f.variance[j] += f.smear[j][k] * f.parameters[f.smearIdx[k]]
+			}
+		}
+		f.variance[j] = min(max(f.variance[j], sq(0.8*f.width)), sq(widest*f.width))
 	}
 	for k, s := range [2]float64{e0, e1} {
 		f.endPoint[k] = f.curve(s)
 		x := int(math.Round((s - f.at[0]) / step))
-		f.endLight[k] = max(f.lightNow[min(max(x, 0), len(f.lightNow)-1)], 0)
+		x = min(max(x, 0), len(f.lightNow)-1)
+		f.endLight[k], f.endVariance[k] = max(f.lightNow[x], 0), f.variance[x]
 	}
 }
 
@@ -449,9 +486,7 @@ func (f *fitter) accumulate(robust bool) {
 	clear(f.slopes)
 	f.widthSum, f.widthGradient, f.chi2 = 0, 0, 0
 	f.tabulate()
-	s2 := f.width * f.width
-	endNorm := 1 / (2 * math.Pi * s2)
-	cut := sq(reach * f.width * 1.1)
+	cut := sq(reach * f.width * 1.2)
 	slopes := f.slopes
 	for i := range f.pixels {
 		p := &f.pixels[i]
@@ -461,7 +496,7 @@ func (f *fitter) accumulate(robust bool) {
 			// Moving an end adds or takes away a piece of line there.
 			if d2 := sq(p.x-c.x) + sq(p.y-c.y); d2 < cut {
 				at := f.endsIdx[k]
-				slopes[at] = float64(2*k-1) * f.endLight[k] * endNorm * math.Exp(-d2/(2*s2))
+				slopes[at] = float64(2*k-1) * f.endLight[k] / (2 * math.Pi * f.endVariance[k]) * math.Exp(-d2/(2*f.endVariance[k]))
 				lo, hi = min(lo, at), max(hi, at)
 			}
 		}
@@ -504,20 +539,20 @@ func (f *fitter) accumulate(robust bool) {
 // tabulate writes each node's Gaussian along x and along y, with the node's share of the line in
 // the first.
 func (f *fitter) tabulate() {
-	f.span = 2*int(math.Ceil(reach*f.width)) + 2
+	f.span = 2*int(math.Ceil(reach*f.width*1.2)) + 2
 	need := len(f.now) * f.span
 	f.alongX, f.alongY = resize(f.alongX, need), resize(f.alongY, need)
 	if cap(f.corner) < len(f.now) {
 		f.corner = make([][2]float64, len(f.now))
 	}
 	f.corner = f.corner[:len(f.now)]
-	s2 := f.width * f.width
-	norm := (f.at[1] - f.at[0]) / (2 * math.Pi * s2)
+	norm := (f.at[1] - f.at[0]) / (2 * math.Pi)
 	half := float64(f.span)/2 - 1
 	for j, c := range f.now {
 		x0, y0 := math.Floor(c.x)-half, math.Floor(c.y)-half
 		f.corner[j] = [2]float64{x0, y0}
-		share := norm * f.weight[j]
+		s2 := f.variance[j]
+		share := norm / s2 * f.weight[j]
 		ex, ey := f.alongX[j*f.span:(j+1)*f.span], f.alongY[j*f.span:(j+1)*f.span]
 		if share == 0 {
 			clear(ex)
@@ -543,7 +578,6 @@ func gaussians(out []float64, from, s2, scale float64) {
 // pixelSlopes adds up what the nodes within reach of p send there, and leaves the derivatives with
 // respect to shape and light in slopes.
 func (f *fitter) pixelSlopes(p *pixel) (model, widthSlope float64) {
-	s2 := 1 / (f.width * f.width)
 	slopes := f.slopes
 	for j := int(p.first); j <= int(p.last); j++ {
 		c := &f.corner[j]
@@ -559,14 +593,20 @@ func (f *fitter) pixelSlopes(p *pixel) (model, widthSlope float64) {
 		g *= f.lightNow[j]
 		dx, dy := p.x-f.now[j].x, p.y-f.now[j].y
 		model += g
-		widthSlope += g * ((dx*dx+dy*dy)*s2 - 2)
+		s2 := 1 / f.variance[j]
+		wider := g * ((dx*dx+dy*dy)*s2 - 2) * s2
+		widthSlope += wider
+		if m := f.smear[j]; m[0] != 0 || m[1] != 0 {
+			slopes[f.smearIdx[0]] += wider / 2 * m[0]
+			slopes[f.smearIdx[1]] += wider / 2 * m[1]
+		}
 		t := g * (dx*f.normals[j].x + dy*f.normals[j].y) * s2
 		sb := &f.shapeBasis[j]
 		for k, w := range sb.w {
 			slopes[f.shapeIdx[sb.first+k]] += t * w
 		}
 	}
-	return model, widthSlope / f.width
+	return model, widthSlope * f.width
 }
 
 // prior adds information so weak that it only decides what the pixels leave open (a dark gap,
@@ -593,6 +633,9 @@ func (f *fitter) prior() {
 	}
 	for k, i := range f.endsIdx {
 		add(i, 3*f.width, f.parameters[i]-f.ends[k])
+	}
+	for _, i := range f.smearIdx {
+		add(i, sq(f.width), f.parameters[i])
 	}
 }
 

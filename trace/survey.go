@@ -74,7 +74,7 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 			if r.widthSE > 0 && r.widthSE < 0.3*f.width {
 				widths = append(widths, min(max(f.width+r.widthStep, f.width*0.6), f.width*1.6))
 			}
-			f.residuals(&samples)
+			f.residuals(frames[0].Width, &samples)
 		}
 		for i := range frames {
 			if _, err := tracer.Frame(frames[i], i); err != nil {
@@ -99,19 +99,35 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 	return c, nil
 }
 
-// residuals adds the fit's residuals to samples: the fitted counts of every pixel, and the squared
-// residual scaled up by what the fit itself has taken out of it (its leverage, spread evenly).
-func (f *fitter) residuals(samples *imaging.NoiseSamples) {
+// residuals adds half the squared difference of the residuals of neighbouring pixels to samples, with
+// the mean of their fitted counts. What the model gets wrong (a line smeared by its own motion) is as
+// wide as the line and nearly the same in neighbours; the camera's noise is not. The squares are
+// scaled up by what the fit itself has taken out of them (its leverage, spread evenly).
+func (f *fitter) residuals(frameWidth int, samples *imaging.NoiseSamples) {
 	n := len(f.pixels)
 	if n <= 2*f.size {
 		return
 	}
-	scale := float64(n) / float64(n-f.size)
+	scale := float64(n) / float64(n-f.size) / 2
+	index := func(p *pixel) int { return int(p.y)*frameWidth + int(p.x) }
+	for i := range f.pixels {
+		f.nearest[index(&f.pixels[i])] = int32(i + 1)
+	}
 	for i := range f.pixels {
 		p := &f.pixels[i]
-		if p.robust < 1 {
-			continue
+		for _, step := range [2]int{1, frameWidth} {
+			at := index(p) + step
+			if at >= len(f.nearest) || f.nearest[at] == 0 {
+				continue
+			}
+			q := &f.pixels[f.nearest[at]-1]
+			if p.robust < 1 || q.robust < 1 || sq(p.x-q.x)+sq(p.y-q.y) > 1 {
+				continue
+			}
+			samples.Add((p.below+p.model+q.below+q.model)/2, sq(p.residual-q.residual)*scale)
 		}
-		samples.Add(p.below+p.model, p.residual*p.residual*scale)
+	}
+	for i := range f.pixels {
+		f.nearest[index(&f.pixels[i])] = 0
 	}
 }

@@ -1,0 +1,247 @@
+package job
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"runtime"
+	"slices"
+
+	"wend/imaging"
+	"wend/imaging/ridge"
+	"wend/modes"
+	"wend/modes/chain"
+	"wend/trace"
+)
+
+// Movie is an open stack with its settings, ready to be measured.
+type Movie struct {
+	Settings Settings
+	stack    *imaging.Stack
+	path     string
+	hash     string
+}
+
+// Open opens the stack at path and settles its calibration. Wrong use wraps ErrUsage; anything else is
+// a bad stack. The caller closes the Movie.
+func Open(path string, r Request) (*Movie, error) {
+	if err := r.Check(); err != nil {
+		return nil, err
+	}
+	stack, err := imaging.Open(path, imaging.OpenOptions{ReadableFrames: r.ReadableFrames})
+	if err != nil {
+		return nil, err
+	}
+	s, err := r.resolve(stack.Info(), stack.Frames())
+	if err != nil {
+		stack.Close()
+		return nil, err
+	}
+	return &Movie{Settings: s, stack: stack, path: path}, nil
+}
+
+// Close closes the stack.
+func (m *Movie) Close() error { return m.stack.Close() }
+
+// Frames is how many frames will be measured.
+func (m *Movie) Frames() int { return m.Settings.LastFrame - m.Settings.FirstFrame + 1 }
+
+// Hash returns the SHA-256 of the stack's file, in hex.
+func (m *Movie) Hash() (string, error) {
+	if m.hash == "" {
+		hash, err := imaging.HashFile(m.path)
+		if err != nil {
+			return "", err
+		}
+		m.hash = hash
+	}
+	return m.hash, nil
+}
+
+// channel is one channel of a stack as a source of frames.
+type channel struct {
+	stack  *imaging.Stack
+	number int // from 0
+}
+
+func (c channel) Frames() int { return c.stack.Frames() }
+
+func (c channel) ReadFrame(t int, dst *imaging.Frame) error {
+	return c.stack.ReadFrame(c.number, t, dst)
+}
+
+// Measure traces and analyses the movie with a pool of workers (0: one per core). progress, if not
+// nil, is called with the number of frames done. The error is ctx's when it ends.
+func (m *Movie) Measure(ctx context.Context, workers int, progress func(done int)) (*Result, error) {
+	hash, err := m.Hash()
+	if err != nil {
+		return nil, err
+	}
+	info := m.stack.Info()
+	r, err := Measure(ctx, channel{m.stack, m.Settings.Channel - 1}, info, m.Settings, workers, progress)
+	if err != nil {
+		return nil, fmt.Errorf("%s: %w", m.path, err)
+	}
+	r.StackPath, r.SHA256 = m.path, hash
+	for _, w := range info.Warnings {
+		r.Warnings = append(r.Warnings, Warning{"file", w})
+	}
+	if damage := m.stack.Damage(); damage != nil {
+		r.Warnings = append(r.Warnings, Warning{"damaged", "Only the intact frames at the start of a damaged stack were measured: " + damage.Error()})
+	}
+	return r, nil
+}
+
+// Measure traces and analyses the frames of src; info and s say what they are. It fills everything of
+// the Result but the name, the path and the hash.
+func Measure(ctx context.Context, src trace.Source, info imaging.Info, s Settings, workers int, progress func(done int)) (*Result, error) {
+	if workers <= 0 {
+		workers = runtime.GOMAXPROCS(0)
+	}
+	hint := trace.CameraHint{GainCounts: s.Gain, OffsetCounts: s.Offset, MaxCount: info.MaxCount}
+	conditions, traced, err := trace.Movie(ctx, src, s.FirstFrame, s.LastFrame,
+		trace.Options{PixelUm: s.PixelUm, MinLengthUm: s.MinLengthUm}, hint, workers, progress)
+	if err != nil {
+		return nil, err
+	}
+	r := &Result{Version: Version, RidgeImplementation: ridge.Implementation(), Settings: s, Info: info,
+		Camera: conditions.Camera, TimesS: times(info, s)}
+	for i := range traced {
+		if err := ctx.Err(); err != nil {
+			return nil, err
+		}
+		traced[i].Quantise()
+		r.Filaments = append(r.Filaments, Analyse(traced[i], r.TimesS, s, conditions.WidthPx*s.PixelUm))
+	}
+	r.PictureFrame = bestFrame(r.Filaments, s)
+	if err := src.ReadFrame(r.PictureFrame, &r.Picture); err != nil {
+		return nil, err
+	}
+	r.Warnings = append(r.Warnings, warnings(r)...)
+	return r, nil
+}
+
+// times gives the time of every frame up to the last one measured: the file's own where it has one
+// for each frame and the interval was not set by hand, otherwise multiples of the interval.
+func times(info imaging.Info, s Settings) []float64 {
+	out := make([]float64, s.LastFrame+1)
+	own := info.Calibration.TimesS
+	for t := range out {
+		if len(own) > s.LastFrame && s.Sources["interval_s"] != "flag" {
+			out[t] = own[t]
+		} else {
+			out[t] = float64(t) * s.IntervalS
+		}
+	}
+	return out
+}
+
+// Analyse turns a traced filament (quantised already) into numbers. widthUm is the standard deviation
+// of the line's profile, pixel included.
+func Analyse(f trace.Filament, timesS []float64, s Settings, widthUm float64) Filament {
+	series := SeriesOf(f, timesS, s, widthUm)
+	o := modes.DefaultOptions()
+	o.ResolutionPSF = trace.ResolvedWidths
+	out := Filament{Filament: f, Series: series, Result: modes.Analyse(series, o),
+		LengthUm: series.LengthUm, LengthSDUm: series.LengthSDUm, FramesUsed: len(series.Curves)}
+	var snr, photons, background, width, errors []float64
+	ends := [2]map[trace.End]int{{}, {}}
+	for _, c := range f.Contours {
+		for k, e := range c.Ends {
+			if len(c.Points) > 0 {
+				ends[k][e]++
+			}
+		}
+		if !c.Used() {
+			continue
+		}
+		snr = append(snr, c.SNR)
+		photons = append(photons, c.PhotonsPerUm)
+		background = append(background, c.BackgroundPerUm2)
+		width = append(width, c.WidthUm)
+		var se []float64
+		for _, p := range c.Points {
+			se = append(se, p.SEUm)
+		}
+		errors = append(errors, median(se))
+	}
+	out.SNR, out.PhotonsPerUm, out.BackgroundPerUm2 = median(snr), median(photons), median(background)
+	out.PSFUm, out.LocalisationUm = median(width), median(errors)
+	for k := range ends {
+		out.Ends[k] = trace.EndFree
+		for _, e := range []trace.End{trace.EndBorder, trace.EndDefocused, trace.EndHidden} {
+			if ends[k][e] > ends[k][out.Ends[k]] {
+				out.Ends[k] = e
+			}
+		}
+	}
+	return out
+}
+
+// SeriesOf is what the analysis sees of a filament: its used frames.
+func SeriesOf(f trace.Filament, timesS []float64, s Settings, widthUm float64) modes.Series {
+	out := modes.Series{PSFUm: widthUm, IntervalS: s.IntervalS, ExposureS: s.ExposureS,
+		TemperatureK: s.TemperatureC + chain.ZeroCelsius, FreeEnds: true}
+	var lengths, errors []float64
+	for _, c := range f.Contours {
+		if !c.Used() {
+			continue
+		}
+		curve := modes.Curve{XUm: make([]float64, len(c.Points)), YUm: make([]float64, len(c.Points))}
+		for i, p := range c.Points {
+			curve.XUm[i], curve.YUm[i] = p.XUm, p.YUm
+		}
+		out.Curves = append(out.Curves, curve)
+		out.TimesS = append(out.TimesS, timesS[c.Frame])
+		out.NoiseUm3 = append(out.NoiseUm3, c.NoiseUm3)
+		lengths = append(lengths, c.LengthUm)
+		errors = append(errors, c.LengthSEUm)
+	}
+	out.LengthUm, out.LengthSEUm, out.LengthSDUm = median(lengths), median(errors), deviation(lengths)
+	return out
+}
+
+// bestFrame is the first frame in which the most filaments were used.
+func bestFrame(filaments []Filament, s Settings) int {
+	count := make(map[int]int)
+	for _, f := range filaments {
+		for _, c := range f.Contours {
+			if c.Used() {
+				count[c.Frame]++
+			}
+		}
+	}
+	best := s.FirstFrame
+	for t := s.FirstFrame; t <= s.LastFrame; t++ {
+		if count[t] > count[best] {
+			best = t
+		}
+	}
+	return best
+}
+
+// median of the values that are numbers; NaN for none.
+func median(v []float64) float64 {
+	s := slices.DeleteFunc(slices.Clone(v), math.IsNaN)
+	if len(s) == 0 {
+		return math.NaN()
+	}
+	slices.Sort(s)
+	return (s[(len(s)-1)/2] + s[len(s)/2]) / 2
+}
+
+// deviation is the standard deviation; NaN below two values.
+func deviation(v []float64) float64 {
+	if len(v) < 2 {
+		return math.NaN()
+	}
+	mean := 0.0
+	for _, x := range v {
+		mean += x / float64(len(v))
+	}
+	sum := 0.0
+	for _, x := range v {
+		sum += (x - mean) * (x - mean)
+	}
+	return math.Sqrt(sum / float64(len(v)-1))
+}
