@@ -104,6 +104,21 @@ func TestOpensWithTheAnswer(t *testing.T) {
 	}
 }
 
+func TestManyFilamentsInOneSentence(t *testing.T) {
+	r := tablestest.Result(5, 12)
+	for i, lp := range []float64{16, math.NaN(), math.NaN(), 18, 23} {
+		r.Filaments[i].LpUm = lp
+	}
+	if got, want := overall(r), "5 filaments: a persistence length for 3 (median 18.0 µm, from 16.0 to 23.0 µm), a lower bound for 1, neither for 1."; got != want {
+		t.Errorf("got  %q\nwant %q", got, want)
+	}
+	r.Filaments = r.Filaments[:2]
+	r.Filaments[1].LpUm = 17
+	if got, want := overall(r), "2 filaments: a persistence length for all (median 16.5 µm, from 16.0 to 17.0 µm)."; got != want {
+		t.Errorf("got  %q\nwant %q", got, want)
+	}
+}
+
 // Every SVG is well-formed, named for those who do not see it, and there are five for a filament and one picture.
 func TestFiguresAreAccessible(t *testing.T) {
 	_, text := write(t, tablestest.Result(2, 30))

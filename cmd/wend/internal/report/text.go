@@ -71,13 +71,29 @@ func overall(r *job.Result) string {
 	if len(r.Filaments) == 0 {
 		return "No filament was found in this stack."
 	}
-	s := fmt.Sprintf("%s: a persistence length for %d", plural(len(r.Filaments), "filament", "filaments"), count[lpMeasured])
+	s := fmt.Sprintf("%s: a persistence length for %s", plural(len(r.Filaments), "filament", "filaments"), ofAll(count[lpMeasured], len(r.Filaments)))
 	if len(values) > 1 {
 		slices.Sort(values)
 		median := (values[(len(values)-1)/2] + values[len(values)/2]) / 2
 		s += fmt.Sprintf(" (median %s µm, from %s to %s µm)", digits(median, 3), digits(values[0], 3), digits(values[len(values)-1], 3))
 	}
-	return s + fmt.Sprintf(", a lower bound for %d, none for %d.", count[lpBound], count[lpNone])
+	if count[lpBound] > 0 {
+		s += fmt.Sprintf(", a lower bound for %s", ofAll(count[lpBound], len(r.Filaments)))
+	}
+	if count[lpNone] > 0 && count[lpNone] < len(r.Filaments) {
+		s += fmt.Sprintf(", neither for %d", count[lpNone])
+	}
+	return s + "."
+}
+
+func ofAll(n, all int) string {
+	switch n {
+	case 0:
+		return "none"
+	case all:
+		return "all"
+	}
+	return fmt.Sprint(n)
 }
 
 // quantityNames are the words for the quantities of estimates.csv, with the unit.
