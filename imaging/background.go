@@ -5,146 +5,163 @@ import (
 	"slices"
 )
 
-// EstimateBackground puts the smooth background of f into dst, in counts. The frame is cut into
-// blocks of about blockPx pixels; in each the pixels near the median are averaged, without the
-// bright ones that belong to filaments and spots; a median over neighbouring blocks removes what
-// fills a whole block; between the blocks' centres the background is linear. blockPx must be
-// positive. Anything smaller than two blocks is not background.
+// samplesPerBlock is about how many pixels of a block EstimateBackground looks at.
+const samplesPerBlock = 150
+
+// EstimateBackground writes the smooth background of f, counts, into dst, which is resized; f is
+// left as it was. Blocks of about blockPx pixels a side (32 suits filaments a few pixels wide) each
+// give one level that bright lines and spots hardly move, a median over neighbouring blocks removes what
+// a bundle or a cell did to a single one, and between and beyond the blocks' centres the
+// levels are interpolated linearly. Structures that fill most of a block are taken for background.
+// A frame under one and a half blocks across shows no slope that way.
+//
+// Pixels that are not finite are passed over; a block of nothing else has the level 0. A frame without
+// pixels gives an empty dst. A blockPx below 8 panics, as does a frame whose Pix does not match its sides.
 func EstimateBackground(f Frame, blockPx int, dst *Frame) {
-	if blockPx <= 0 {
-		panic("imaging: EstimateBackground: blockPx must be positive")
+	if blockPx < 8 {
+		panic("imaging: EstimateBackground: blockPx below 8")
+	}
+	if len(f.Pix) != f.Width*f.Height {
+		panic("imaging: EstimateBackground: Pix does not match the frame's sides")
 	}
 	dst.Resize(f.Width, f.Height)
-	nx, ny := max(1, (f.Width+blockPx/2)/blockPx), max(1, (f.Height+blockPx/2)/blockPx)
-	levels := make([]float32, nx*ny)
-	values := make([]float32, 0, blockPx*blockPx/4+blockPx)
-	for by := range ny {
-		y0, y1 := by*f.Height/ny, (by+1)*f.Height/ny
-		for bx := range nx {
-			x0, x1 := bx*f.Width/nx, (bx+1)*f.Width/nx
-			values = values[:0]
-			// Every third pixel of every second row: neighbours share most of a filament anyway.
-			for y := y0; y < y1; y += 2 {
-				row := f.Pix[y*f.Width : (y+1)*f.Width]
-				for x := x0 + y/2%3; x < x1; x += 3 {
-					values = append(values, row[x])
-				}
-			}
-			levels[by*nx+bx] = float32(clippedMean(values))
+	if len(f.Pix) == 0 {
+		return
+	}
+	nx, ny := blocks(f.Width, blockPx), blocks(f.Height, blockPx)
+	raw := make([]float32, nx*ny)
+	var buf []float32
+	for j := range ny {
+		for i := range nx {
+			buf = sampleBlock(f, i*f.Width/nx, (i+1)*f.Width/nx, j*f.Height/ny, (j+1)*f.Height/ny, buf[:0])
+			raw[j*nx+i] = level(buf)
 		}
 	}
-	levels = medianOfNeighbours(levels, nx, ny)
-	interpolateBlocks(levels, nx, ny, dst)
+	interpolate(medianOfNeighbours(raw, nx, ny), nx, ny, dst)
 }
 
-// clippedMean averages the values within 2.5 standard deviations of the median, the deviation
-// taken from the values below it, where nothing bright can widen it. It sorts v.
-func clippedMean(v []float32) float64 {
-	if len(v) == 0 {
-		return 0
-	}
-	slices.Sort(v)
-	for range 3 {
-		n := len(v)
-		median := float64(v[n/2])
-		sd := max(median-float64(v[int(0.1587*float64(n))]), 0.5)
-		hi := n
-		for hi > 1 && float64(v[hi-1]) > median+2.5*sd {
-			hi--
+// blocks is how many blocks of about size px cover n px.
+func blocks(n, size int) int { return max(1, (n+size/2)/size) }
+
+// sampleBlock appends an evenly spread part of the pixels x0…x1−1, y0…y1−1 to buf.
+func sampleBlock(f Frame, x0, x1, y0, y1 int, buf []float32) []float32 {
+	step := max(1, (x1-x0)*(y1-y0)/samplesPerBlock)
+	// Every step-th pixel, the count running on from row to row, so that no column is favoured.
+	step |= 1
+	skip := 0
+	for y := y0; y < y1; y++ {
+		row := f.Pix[y*f.Width+x0 : y*f.Width+x1]
+		for ; skip < len(row); skip += step {
+			v := row[skip]
+			if v-v == 0 { // finite
+				buf = append(buf, v)
+			}
 		}
-		if hi == n {
+		skip -= len(row)
+	}
+	return buf
+}
+
+// level is the centre of the main, symmetric part of v, which is reordered: what lies farther
+// above the centre than noise can is cut off, and the same distance below, until the centre
+// stays. The noise comes from the lower half alone, where filaments are not.
+func level(v []float32) float32 {
+	half := len(v) / 2
+	if half == 0 {
+		if len(v) == 0 {
+			return 0
+		}
+		return v[0]
+	}
+	// selectRank leaves the smaller values before the chosen one. Of those, 0.3173 lie more than
+	// one standard deviation below it.
+	centre := selectRank(v, half)
+	sd := centre - selectRank(v[:half], int(0.3173*float64(half)))
+	const (
+		cut     = 2
+		shrinks = 0.7737 // variance of a unit Gaussian cut off at ±2: 1 − 4φ(2)/erf(√2)
+	)
+	for range 6 {
+		reach := cut * sd
+		var sum, square float32
+		count, below := 0, 0
+		for _, x := range v {
+			d := x - centre
+			if d > reach || d < -reach {
+				continue
+			}
+			sum += d
+			count++
+			if d <= 0 {
+				square += d * d
+				below++
+			}
+		}
+		if count == 0 || below == 0 || sd == 0 {
 			break
 		}
-		v = v[:hi]
-	}
-	n := len(v)
-	median := float64(v[n/2])
-	sd := max(median-float64(v[int(0.1587*float64(n))]), 0.5)
-	sum, count := 0.0, 0
-	for _, x := range v {
-		if math.Abs(float64(x)-median) <= 2.5*sd {
-			sum += float64(x)
-			count++
+		shift := sum / float32(count)
+		centre += shift
+		sd = float32(math.Sqrt(float64(square) / float64(below) / shrinks))
+		if shift*shift < 1e-4*sd*sd {
+			break
 		}
 	}
-	if count == 0 {
-		return median
-	}
-	return sum / float64(count)
+	return centre
 }
 
-func medianOfNeighbours(levels []float32, nx, ny int) []float32 {
-	out := make([]float32, len(levels))
-	var near []float32
-	for y := range ny {
-		for x := range nx {
-			near = near[:0]
-			for j := max(0, y-1); j <= min(ny-1, y+1); j++ {
-				near = append(near, levels[j*nx+max(0, x-1):j*nx+min(nx-1, x+1)+1]...)
+// medianOfNeighbours replaces each block by the median of those around it, as far as they lie on
+// both sides of it: a one-sided choice at the border would bend a slope.
+func medianOfNeighbours(raw []float32, nx, ny int) []float32 {
+	out := make([]float32, len(raw))
+	var buf [9]float32
+	for j := range ny {
+		for i := range nx {
+			rx, ry := min(1, i, nx-1-i), min(1, j, ny-1-j)
+			v := buf[:0]
+			for y := j - ry; y <= j+ry; y++ {
+				v = append(v, raw[y*nx+i-rx:y*nx+i+rx+1]...)
 			}
-			slices.Sort(near)
-			n := len(near)
-			out[y*nx+x] = (near[(n-1)/2] + near[n/2]) / 2
+			slices.Sort(v)
+			out[j*nx+i] = v[len(v)/2]
 		}
 	}
 	return out
 }
 
-// interpolateBlocks spreads block levels over dst, linearly between the blocks' centres and
-// constant outside them.
-func interpolateBlocks(levels []float32, nx, ny int, dst *Frame) {
-	place := func(i, count, size int) (int, int, float32) {
-		at := (float64(i)+0.5)*float64(count)/float64(size) - 0.5
-		k := min(max(int(math.Floor(at)), 0), count-1)
-		return k, min(k+1, count-1), float32(min(max(at-float64(k), 0), 1))
+// interpolate fills dst bilinearly from levels at the centres of nx by ny blocks, going on
+// linearly beyond the outermost ones.
+func interpolate(levels []float32, nx, ny int, dst *Frame) {
+	column, weight := make([]int, dst.Width), make([]float32, dst.Width)
+	for x := range column {
+		column[x], weight[x] = between(x, dst.Width, nx)
 	}
-	row := make([]float32, nx)
+	line := make([]float32, nx)
 	for y := range dst.Height {
-		a, b, t := place(y, ny, dst.Height)
-		for x := range nx {
-			row[x] = levels[a*nx+x] + t*(levels[b*nx+x]-levels[a*nx+x])
+		j, v := between(y, dst.Height, ny)
+		a, b := levels[j*nx:][:nx], levels[min(j+1, ny-1)*nx:][:nx]
+		for i := range line {
+			line[i] = a[i] + v*(b[i]-a[i])
 		}
-		out := dst.Pix[y*dst.Width : (y+1)*dst.Width]
+		out := dst.Pix[y*dst.Width:][:dst.Width]
 		for x := range out {
-			c, d, u := place(x, nx, dst.Width)
-			out[x] = row[c] + u*(row[d]-row[c])
+			i := column[x]
+			left := line[i]
+			out[x] = left + weight[x]*(line[min(i+1, nx-1)]-left)
 		}
 	}
 }
 
-// NoiseStd returns the standard deviation of one pixel's noise in counts, from the differences of
-// neighbours in f minus background. Filaments and spots are left out because differences beyond
-// three standard deviations are; it is right for noise that is white. NaN for less than two columns.
-func NoiseStd(f, background Frame) float64 {
-	var sum float64
-	n := 0
-	limit := math.Inf(1)
-	sd := math.NaN()
-	for range 12 {
-		sum, n = 0, 0
-		for y := 0; y < f.Height; y += 3 {
-			row, back := f.Pix[y*f.Width:(y+1)*f.Width], background.Pix[y*f.Width:(y+1)*f.Width]
-			for x := 0; x+1 < len(row); x += 2 {
-				d := float64((row[x+1] - back[x+1]) - (row[x] - back[x]))
-				if math.Abs(d) <= limit {
-					sum += d * d
-					n++
-				}
-			}
-		}
-		if n == 0 {
-			return sd
-		}
-		v := sum / float64(n)
-		if !math.IsInf(limit, 1) {
-			v /= 0.9733 // variance of a Gaussian cut at three standard deviations
-		}
-		before := sd
-		sd = math.Sqrt(v / 2)
-		limit = 3 * math.Sqrt(v)
-		if math.Abs(before-sd) < 1e-3*sd {
-			break
-		}
+// between finds the block i whose centre and the next one's enclose pixel x of n, and
+// the weight of the next; at the borders the nearest pair, with a weight outside 0…1.
+func between(x, n, count int) (i int, weight float32) {
+	centre := func(i int) float64 { return float64(i*n/count+(i+1)*n/count-1) / 2 }
+	if count == 1 {
+		return 0, 0
 	}
-	return sd
+	i = min(max(x*count/n, 0), count-2)
+	if i > 0 && float64(x) < centre(i) {
+		i--
+	}
+	return i, float32((float64(x) - centre(i)) / (centre(i+1) - centre(i)))
 }
