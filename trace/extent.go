@@ -7,7 +7,7 @@ import (
 )
 
 // extent cuts path, or makes it go on straight, to where the line's light begins and ends. Along the
-// path the light is compared with half of its median: of all stretches the one with the largest
+// path the light is compared with six tenths of its median: of all stretches the one with the largest
 // sum of differences is the likeliest to be a line of even brightness with nothing beyond. A dark
 // gap stays inside, a noise ridge that continues the line stays out.
 func extent(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy, width float64) []xy {
@@ -21,7 +21,7 @@ func extent(frame, background imaging.Frame, excluded func(pixel int) bool, path
 		light[i] = glow(frame, background, excluded, p, width)
 	}
 	inner := light[int(margin/step) : count-int(margin/step)]
-	half := median(inner) / 2
+	half := median(inner) / 1.7
 	if !(half > 0) {
 		return path
 	}

@@ -197,7 +197,8 @@ func markLength(contours []Contour) {
 		return
 	}
 	m := median(lengths)
-	limit := max(6*max(spread(lengths), median(errs)), 0.03*m)
+	se := median(errs)
+	limit := max(5*min(max(spread(lengths), se), 2*se), 0.03*m)
 	for i := range contours {
 		if c := &contours[i]; c.Reason == "" && math.Abs(c.LengthUm-m) > limit {
 			c.Reason = ReasonLength
