@@ -133,8 +133,10 @@ func medianOfNeighbours(raw []float32, nx, ny int) []float32 {
 // linearly beyond the outermost ones.
 func interpolate(levels []float32, nx, ny int, dst *Frame) {
 	column, weight := make([]int, dst.Width), make([]float32, dst.Width)
+	end := make([]int, nx) // of the stretch of pixels that belongs to a column of blocks
 	for x := range column {
 		column[x], weight[x] = between(x, dst.Width, nx)
+		end[column[x]] = x + 1
 	}
 	line := make([]float32, nx)
 	for y := range dst.Height {
@@ -144,10 +146,14 @@ func interpolate(levels []float32, nx, ny int, dst *Frame) {
 			line[i] = a[i] + v*(b[i]-a[i])
 		}
 		out := dst.Pix[y*dst.Width:][:dst.Width]
-		for x := range out {
+		for x := 0; x < len(out); {
 			i := column[x]
-			left := line[i]
-			out[x] = left + weight[x]*(line[min(i+1, nx-1)]-left)
+			left, rise := line[i], line[min(i+1, nx-1)]-line[i]
+			stretch, w := out[x:end[i]], weight[x:end[i]]
+			for k := range stretch {
+				stretch[k] = left + w[k]*rise
+			}
+			x = end[i]
 		}
 	}
 }
