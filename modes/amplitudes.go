@@ -20,6 +20,7 @@ type amplitudes struct {
 	b            [][]float64 // b[mode][frame], µm^3/2
 	resolved     int         // modes 1 to resolved are long against the line's width
 	fitted       int         // modes 1 to fitted go into the likelihood
+	held         int         // modes 1 to held are in the contours, resolved or not
 }
 
 // noiseFloorUm3 keeps the noise positive where contours without noise are analysed: 0.01 nm² along a µm.
@@ -42,6 +43,12 @@ func measure(s Series, o Options) amplitudes {
 		a.resolved = n
 	}
 	a.fitted = min(a.resolved, o.MaxModes)
+	const most = 400
+	for a.held = a.resolved; a.held < min(most, longest(s.Curves)/2); a.held++ {
+		if 2*math.Pi/BeamWavenumber(a.held+1, s.LengthUm) < o.ContourPSF*a.psfUm {
+			break
+		}
+	}
 	basis := newBasis(s.LengthUm, a.resolved+2)
 	a.k = basis.k
 	a.b = make([][]float64, len(a.k))
@@ -80,7 +87,7 @@ func longest(curves []Curve) int {
 
 // noiseGain returns by what a mode's noise exceeds P: exp((k·PSF)²).
 func (a amplitudes) noiseGain(mode int) float64 {
-	x := a.k[mode-1] * a.psfUm
+	x := BeamWavenumber(mode, a.lengthUm) * a.psfUm
 	return math.Exp(x * x)
 }
 

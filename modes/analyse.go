@@ -124,10 +124,20 @@ func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series
 		}
 		r.Modes = append(r.Modes, rows[i].Mode)
 	}
-	value, low, high, used := combineModes(rows)
+	value, low, high, used := combineModes(rows, fit.DragPaS.Value, a.frames.ExposureS)
+	// The blur is as uncertain as the drag: the interval spans those at both ends of the drag's.
+	for _, drag := range []float64{fit.DragPaS.Low, fit.DragPaS.High} {
+		drag = math.Min(math.Max(drag, o.Likelihood.DragLowPaS), o.Likelihood.DragHighPaS)
+		if _, l, h, n := combineModes(rows, drag, a.frames.ExposureS); n > 0 {
+			low, high = math.Min(low, l), math.Max(high, h)
+		}
+	}
 	note := fmt.Sprintf("%d cosine modes, corrected for noise, exposure (fitted drag) and the subtracted mean shape", used)
 	if used == 0 {
 		note = "no mode could be used"
+	}
+	if math.IsInf(high, 1) {
+		value = math.NaN()
 	}
 	r.add(QuantityLp, MethodModes, value, low, high, note)
 

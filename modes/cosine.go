@@ -13,6 +13,21 @@ type cosineRow struct {
 	Mode
 	gain float64 // expected variance about the time mean, noise excluded, over (L/nπ)²/Lp
 	free float64 // (L/nπ)², µm²
+	// The beam modes behind it: their shares of the free variance, and relaxation times times Lp for a drag of 1 Pa·s.
+	share, slowness []float64
+	keeps           float64 // gain over the blurred shares: what the subtracted mean leaves
+}
+
+// gainAt is gain for another persistence length, µm, and drag, Pa·s, and exposure in s; what the subtracted mean leaves is held.
+func (r cosineRow) gainAt(lpUm, dragPaS, exposureS float64) float64 {
+	if len(r.share) == 0 {
+		return r.gain
+	}
+	sum := 0.0
+	for i, w := range r.share {
+		sum += w * chain.BlurFactor(exposureS*lpUm/(dragPaS*r.slowness[i]))
+	}
+	return r.keeps * sum
 }
 
 // cosineModes returns the cosine modes of the tangent angle, a_n = √(2/L)∫θ cos(nπs/L) ds, n from 1.
@@ -49,11 +64,16 @@ func cosineModes(a amplitudes, t theory, o Options) []cosineRow {
 			kept += share
 			mix.weight = append(mix.weight, share)
 			mix.relaxation = append(mix.relaxation, a.relaxation(k, t))
+			row.share = append(row.share, share)
+			row.slowness = append(row.slowness, a.relaxation(k, theory{lpUm: 1, dragPaS: 1}))
 			noise += w * w * noiseUm3 * a.noiseGain(m)
 		}
 		mix.noise = noise * t.lpUm / row.free
 		visible, about := mix.signal()
 		row.gain = about
+		if visible > 0 {
+			row.keeps = about / visible
+		}
 		row.BlurFactor = visible / kept
 		row.MeanAmplitude = mean(series)
 		for _, x := range series {
@@ -116,13 +136,14 @@ func (r cosineRow) whyNot(a amplitudes, t theory, o Options, noise float64) stri
 }
 
 // combineModes returns the persistence length, µm, that makes the variances of the used modes most likely, each
-// being V·χ²_ν/ν with ν shapes, with the interval where the log-likelihood has dropped by half the χ² quantile. NaN without a used mode.
-func combineModes(rows []cosineRow) (value, low, high float64, used int) {
+// being V·χ²_ν/ν with ν shapes, with the interval where the log-likelihood has dropped by half the χ² quantile. The blur follows from the
+// given drag, Pa·s, and exposure, s. NaN without a used mode.
+func combineModes(rows []cosineRow, dragPaS, exposureS float64) (value, low, high float64, used int) {
 	f := func(x float64) float64 {
 		sum := 0.0
 		for _, r := range rows {
 			if r.Used {
-				v := r.free*r.gain*math.Exp(-x) + r.NoiseVariance
+				v := r.free*r.gainAt(math.Exp(x), dragPaS, exposureS)*math.Exp(-x) + r.NoiseVariance
 				sum -= 0.5 * r.Shapes * (math.Log(v) + r.Variance/v)
 			}
 		}
@@ -144,7 +165,7 @@ func combineModes(rows []cosineRow) (value, low, high float64, used int) {
 		}
 	}
 	lo, hi := best-step, best+step
-	for range 60 { // golden section is not needed for so smooth a peak: thirds
+	for range 40 {
 		a, b := lo+(hi-lo)/3, hi-(hi-lo)/3
 		if f(a) < f(b) {
 			lo = a

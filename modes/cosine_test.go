@@ -86,7 +86,7 @@ func TestCosineModesBlur(t *testing.T) {
 func TestCombineModesOne(t *testing.T) {
 	r := cosineRow{gain: 0.5, free: 4}
 	r.Used, r.Variance, r.Shapes = true, 0.2, 40
-	value, low, high, used := combineModes([]cosineRow{r})
+	value, low, high, used := combineModes([]cosineRow{r}, 1, 0)
 	if want := 4 * 0.5 / 0.2 * math.Exp(-1./40); used != 1 || !(math.Abs(value/want-1) < 1e-4) {
 		t.Errorf("%d modes, %.6f, want 1 and %.6f", used, value, want)
 	}
@@ -117,6 +117,21 @@ func TestTangentOfArc(t *testing.T) {
 	for _, r := range rows {
 		if want := math.Cos(r.SeparationUm / 5); !(math.Abs(r.CosMean-want) < 1e-6) {
 			t.Errorf("separation %.2f µm: %.8f, want %.8f", r.SeparationUm, r.CosMean, want)
+		}
+	}
+}
+
+// ∫ψ′² in closed form against the integral.
+func TestSlopeSquare(t *testing.T) {
+	for _, m := range []int{1, 2, 3, 8, 21} {
+		const cells = 4000
+		want := 0.0
+		for i := range cells {
+			d := chain.BeamSlope(m, (float64(i)+0.5)/cells)
+			want += d * d / cells
+		}
+		if got := slopeSquare(m); !(math.Abs(got/want-1) < 1e-4) {
+			t.Errorf("mode %d: %.5f, integral %.5f", m, got, want)
 		}
 	}
 }

@@ -33,7 +33,7 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 	// Across the line the two ends err by P/L·(1+3) from the rigid modes and 4/L from each bending mode.
 	noiseUm3 := t.noiseScale * mean(a.noiseUm3)
 	endVariance := 4 * noiseUm3 / l
-	for m := range a.resolved {
+	for m := range a.held {
 		endVariance += 4 * noiseUm3 * a.noiseGain(m+1) / l
 	}
 	r2 -= 2 * endVariance
@@ -92,41 +92,26 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 func (a amplitudes) missingLength(t theory) float64 {
 	noiseUm3 := t.noiseScale * mean(a.noiseUm3)
 	sum := 0.0
-	for m := range theoryModes {
-		k := BeamWavenumber(m+1, a.lengthUm)
+	count := max(a.held, theoryModes)
+	for m := 1; m <= count; m++ {
+		k := BeamWavenumber(m, a.lengthUm)
 		shown, noise := 0.0, 0.0
-		if m < a.resolved {
+		if m <= a.held {
 			shown = chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, t))
-			noise = noiseUm3 * a.noiseGain(m+1)
+			noise = noiseUm3 * a.noiseGain(m)
 		}
-		sum += slopeSquare(m+1) / (2 * a.lengthUm * a.lengthUm) * ((1-shown)/(t.lpUm*math.Pow(k, 4)) - noise)
+		sum += slopeSquare(m) / (2 * a.lengthUm * a.lengthUm) * ((1-shown)/(t.lpUm*math.Pow(k, 4)) - noise)
 	}
 	// The finer modes, with ∫ψ′² → k² and k → (m+½)π/L.
-	return sum + a.lengthUm*a.lengthUm/(2*math.Pi*math.Pi*t.lpUm*(theoryModes+1))
+	return sum + a.lengthUm*a.lengthUm/(2*math.Pi*math.Pi*t.lpUm*float64(count+1))
 }
 
-// slopeSquares holds ∫ψ_m′² of the first modes of a filament of unit length.
-var slopeSquares = func() (s [theoryModes]float64) {
-	for m := range s {
-		s[m] = integrateSlopeSquare(m + 1)
-	}
-	return s
-}()
-
-// slopeSquare returns ∫ψ_m′² over a filament of unit length.
+// slopeSquare returns ∫ψ_m′² over a filament of unit length: σk(σk+6) with σ = tanh(k/2) for odd m and coth(k/2) for even.
 func slopeSquare(m int) float64 {
-	if m <= theoryModes {
-		return slopeSquares[m-1]
+	k := chain.BeamRoot(m)
+	sigma := math.Tanh(k / 2)
+	if m%2 == 0 {
+		sigma = 1 / sigma
 	}
-	return integrateSlopeSquare(m)
-}
-
-func integrateSlopeSquare(m int) float64 {
-	const cells = 400
-	sum := 0.0
-	for i := range cells {
-		d := chain.BeamSlope(m, (float64(i)+0.5)/cells)
-		sum += d * d
-	}
-	return sum / cells
+	return sigma * k * (sigma*k + 6)
 }

@@ -168,7 +168,7 @@ func fitTangent(a amplitudes, rows []tangentRow, t theory, o Options) tangentFit
 	fit.fromUm, fit.toUm = from, to
 	// slope = Σ c_r q_r with Σc = 0 and Σ c·s = 1.
 	slope, level := 0.0, 0.0
-	contrast := make([]float64, theoryModes)
+	contrast := make([]float64, max(theoryModes, a.held))
 	for _, r := range rows {
 		if !r.Used {
 			continue
@@ -187,10 +187,15 @@ func fitTangent(a amplitudes, rows []tangentRow, t theory, o Options) tangentFit
 	spread := a.turnSpreads(t)
 	for m, g := range contrast {
 		k := BeamWavenumber(m+1, a.lengthUm)
-		blurred := chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, t))
-		seen -= 2 * g * (1 - blurred) / math.Pow(k, 4)
-		if m < a.resolved {
+		shown := 0.0
+		if m < a.held {
+			shown = chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, t))
+		}
+		seen -= 2 * g * (1 - shown) / math.Pow(k, 4)
+		if m < a.held {
 			noise += g * t.noiseScale * mean(a.noiseUm3) * a.noiseGain(m+1)
+		}
+		if m < a.resolved {
 			variance += g * g * spread[m]
 		}
 	}

@@ -145,24 +145,26 @@ func cover(cs []condition, reps int, seed uint64, workers int) []row {
 
 // write prints the rows and, last, all of them together.
 func write(w io.Writer, rows []row) {
-	fmt.Fprintln(w, "drag mPa·s | length µm | Lp µm | frames | interval s | exposure s | noise µm³ | noise scale | n | covered | low > truth | high < truth | open | bias ln | rms ln | predicted | drag covered | modes covered | modes bias | tangent bias | distance bias | thermal | changing")
+	fmt.Fprintln(w, "drag mPa·s | length µm | Lp µm | frames | interval s | exposure s | noise µm³ | noise scale | n | covered | low > truth | high < truth | open | bias ln | rms ln | predicted | drag covered | modes covered | bias | tangent covered | bias | distance covered | bias | thermal | changing")
 	var all row
 	for _, r := range rows {
 		mean, rms, predicted := r.lp.bias()
 		modesBias, _, _ := r.modes.bias()
 		tangentBias, _, _ := r.tangent.bias()
 		distanceBias, _, _ := r.distance.bias()
-		fmt.Fprintf(w, "%.1f | %.0f | %.0f | %d | %.1f | %.2f | %.0e | %.2f | %d | %.3f | %d | %d | %d | %+.3f | %.3f | %.3f | %.3f | %.3f | %+.3f | %+.3f | %+.3f | %d | %d\n",
+		fmt.Fprintf(w, "%.1f | %.0f | %.0f | %d | %.1f | %.2f | %.0e | %.2f | %d | %.3f | %d | %d | %d | %+.3f | %.3f | %.3f | %.3f | %.3f | %+.3f | %.3f | %+.3f | %.3f | %+.3f | %d | %d\n",
 			r.dragPaS*1e3, r.lengthUm, r.lpUm, r.frames, r.intervalS, r.exposureS, r.noiseUm3, r.noiseScale, r.lp.n,
 			r.lp.covered(), r.lp.lowMiss, r.lp.highMiss, r.lp.open, mean, rms, predicted,
-			r.drag.covered(), r.modes.covered(), modesBias, tangentBias, distanceBias, r.thermal, r.changing)
+			r.drag.covered(), r.modes.covered(), modesBias, r.tangent.covered(), tangentBias, r.distance.covered(), distanceBias, r.thermal, r.changing)
 		all.lp.n, all.lp.held, all.lp.none = all.lp.n+r.lp.n, all.lp.held+r.lp.held, all.lp.none+r.lp.none
 		all.drag.n, all.drag.held, all.drag.none = all.drag.n+r.drag.n, all.drag.held+r.drag.held, all.drag.none+r.drag.none
 		all.modes.n, all.modes.held, all.modes.none = all.modes.n+r.modes.n, all.modes.held+r.modes.held, all.modes.none+r.modes.none
+		all.tangent.n, all.tangent.held, all.tangent.none = all.tangent.n+r.tangent.n, all.tangent.held+r.tangent.held, all.tangent.none+r.tangent.none
+		all.distance.n, all.distance.held, all.distance.none = all.distance.n+r.distance.n, all.distance.held+r.distance.held, all.distance.none+r.distance.none
 		all.lp.errors = append(all.lp.errors, r.lp.errors...)
 		all.lp.widths = append(all.lp.widths, r.lp.widths...)
 	}
 	mean, rms, _ := all.lp.bias()
-	fmt.Fprintf(w, "all: %d movies, covered %.3f, drag %.3f, modes %.3f, bias ln %+.3f, rms ln %.3f\n",
-		all.lp.n, all.lp.covered(), all.drag.covered(), all.modes.covered(), mean, rms)
+	fmt.Fprintf(w, "all: %d movies, covered %.3f, drag %.3f, modes %.3f, tangent %.3f, distance %.3f, bias ln %+.3f, rms ln %.3f\n",
+		all.lp.n, all.lp.covered(), all.drag.covered(), all.modes.covered(), all.tangent.covered(), all.distance.covered(), mean, rms)
 }

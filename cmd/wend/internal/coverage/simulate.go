@@ -23,7 +23,7 @@ const (
 	psfUm        = 0.13
 	spacingUm    = 0.1
 	finestUm     = 6.8 * psfUm // wavelength below which a contour holds neither signal nor noise
-	bendPerUm    = 0.03        // curvature of the intrinsic shape
+	bendPerUm    = 0.01        // curvature of the intrinsic shape
 )
 
 // simulate draws the contours of a movie: exposure-averaged thermal modes about a bent shape, and noise of the density that is
