@@ -19,7 +19,6 @@ const (
 type track struct {
 	contours []Contour // found ones, in order of frames
 	steps    []float64 // mean displacement between successive frames, µm
-	id       int
 }
 
 func (k *track) last() *Contour { return &k.contours[len(k.contours)-1] }

@@ -1,0 +1,136 @@
+package trace
+
+import (
+	"math"
+
+	"gonum.org/v1/gonum/blas"
+	"gonum.org/v1/gonum/blas/blas64"
+	"gonum.org/v1/gonum/lapack/lapack64"
+)
+
+// iterate runs damped Gauss-Newton steps until nothing moves, and returns the largest
+// displacement from the path.
+func (f *fitter) iterate(pass int) (moved float64, err error) {
+	const steps = 12
+	// The first pass only has to bring the path close enough for its normals to be right.
+	settled := 0.03 * f.width
+	if pass == 0 {
+		settled = 0.15 * f.width
+	}
+	f.place()
+	f.accumulate(pass > 0)
+	last := f.chi2
+	f.trial = resize(f.trial, f.size)
+	for step := 0; step < steps; step++ {
+		f.prior()
+		delta := append(f.trial[:0], f.gradient[:f.size]...)
+		if !f.solve(delta) {
+			return 0, errFit
+		}
+		// No step may throw the line off its light.
+		move := f.largest(delta)
+		scale := min(1, f.width/move)
+		before := append([]float64(nil), f.parameters...)
+		for halving := 0; ; halving++ {
+			for i := range delta {
+				f.parameters[i] = before[i] + scale*delta[i]
+			}
+			f.place()
+			f.accumulate(step >= 1 || pass > 0)
+			if math.IsNaN(f.chi2) {
+				return 0, errFit
+			}
+			if f.chi2 <= last*1.02 || pass == 0 && step < 2 || halving == 4 {
+				break
+			}
+			scale /= 2
+		}
+		last = f.chi2
+		if scale*move < settled {
+			break
+		}
+	}
+	if !(f.parameters[f.endsIdx[1]]-f.parameters[f.endsIdx[0]] > 3*f.width) {
+		return 0, errTooBig
+	}
+	return f.largest(f.parameters), nil
+}
+
+// secondDifference of three B-spline coefficients, over the squared knot distance, is the curvature at
+// the middle knot.
+var secondDifference = [3]float64{1, -2, 1}
+
+// prior adds information so weak that it only decides what the pixels leave open (a dark gap,
+// an end without light): shape within 3 widths, brightness within a quarter of its mean.
+func (f *fitter) prior() {
+	bw := f.bandwidth
+	add := func(i int, sd, value float64) {
+		f.normal[i*(bw+1)] += 1 / (sd * sd)
+		f.gradient[i] -= value / (sd * sd)
+	}
+	mean := 0.0
+	for _, i := range f.lightIdx {
+		mean += f.parameters[i]
+	}
+	mean = max(math.Abs(mean)/float64(len(f.lightIdx)), 1e-6)
+	for _, i := range f.shapeIdx {
+		add(i, 3*f.width, f.parameters[i])
+	}
+	for _, i := range f.lightIdx {
+		add(i, 0.25*mean, f.parameters[i]-mean)
+	}
+	for _, i := range f.underIdx {
+		add(i, 10*mean/f.width, f.parameters[i])
+	}
+	for k, i := range f.endsIdx {
+		add(i, 3*f.width, f.parameters[i]-f.ends[k])
+	}
+	// A free end carries no bending moment.
+	h := f.shape.step
+	last := len(f.shapeIdx) - 1
+	for k, three := range [2][3]int{{0, 1, 2}, {last, last - 1, last - 2}} {
+		want := -f.endCurvature[k]
+		weight := sq(f.width / endCurvatureSD)
+		have := 0.0
+		for m, c := range three {
+			have += secondDifference[m] * f.parameters[f.shapeIdx[c]] / (h * h)
+		}
+		for m, c := range three {
+			i := f.shapeIdx[c]
+			f.gradient[i] += weight * secondDifference[m] / (h * h) * (want - have)
+			for n, d := range three {
+				if j := f.shapeIdx[d]; j >= i {
+					f.normal[i*(bw+1)+j-i] += weight * secondDifference[m] * secondDifference[n] / sq(h*h)
+				}
+			}
+		}
+	}
+	for k, i := range f.smearIdx {
+		sd := smearSD
+		if k < 2 || k >= len(f.smearIdx)-2 {
+			sd = endSmearSD
+		}
+		add(i, sd*sq(f.width), f.parameters[i])
+	}
+}
+
+// factor replaces the normal equations by their Cholesky factor.
+func (f *fitter) factor() (blas64.TriangularBand, bool) {
+	return lapack64.Pbtrf(blas64.SymmetricBand{Uplo: blas.Upper, N: f.size, K: f.bandwidth,
+		Stride: f.bandwidth + 1, Data: f.normal[:f.size*(f.bandwidth+1)]})
+}
+
+// solve solves the normal equations for right-hand side b, in place; they are factored in place.
+func (f *fitter) solve(b []float64) bool {
+	t, ok := f.factor()
+	if !ok {
+		return false
+	}
+	lapack64.Pbtrs(t, blas64.General{Rows: f.size, Cols: 1, Stride: 1, Data: b})
+	for _, v := range b {
+		if math.IsNaN(v) || math.IsInf(v, 0) {
+			return false
+		}
+	}
+	return true
+}
