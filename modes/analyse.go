@@ -154,7 +154,20 @@ func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series
 			r.TangentFitLpUm, r.TangentFitIntercept = 1/(2*line.slopePerUm), line.intercept
 		}
 	}
+	line.low, line.high = widen(line.lpUm, line.low, line.high, t, fit.RatioSD, func(c theory) float64 {
+		return fitTangent(a, tangent, c, o).lpUm
+	})
 	distance := fitDistance(a, t, s.LengthSDUm, s.LengthSEUm)
+	distance.low, distance.high = widen(distance.lpUm, distance.low, distance.high, t, fit.RatioSD, func(c theory) float64 {
+		return fitDistance(a, c, s.LengthSDUm, s.LengthSEUm).lpUm
+	})
+	// Without an upper limit there is no value either.
+	if math.IsInf(line.high, 1) {
+		line.lpUm = math.NaN()
+	}
+	if math.IsInf(distance.high, 1) {
+		distance.lpUm = math.NaN()
+	}
 	if t.lpUnresolved {
 		// Neither can be corrected for blur, nor its shapes counted, without a stiffness.
 		line.lpUm, line.low, line.high = math.NaN(), math.NaN(), math.NaN()
@@ -163,7 +176,12 @@ func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series
 	}
 	r.add(QuantityLp, MethodTangent, line.lpUm, line.low, line.high, note)
 	note = "fixed contour length, corrected for noise and for undulations hidden by exposure and optics; includes any intrinsic bend; a small error of the length weighs much"
-	if math.IsNaN(distance.lpUm) {
+	switch {
+	case t.lpUnresolved:
+		note = "fluctuations not resolved"
+	case math.IsInf(distance.high, 1):
+		note = "no upper limit: the corrections for noise and exposure are as large as the contraction"
+	case math.IsNaN(distance.lpUm):
 		note = "the ends are as far apart as the contour is long, within the noise"
 	}
 	r.add(QuantityLp, MethodDistance, distance.lpUm, distance.low, distance.high, note)

@@ -11,6 +11,37 @@ type distanceFit struct {
 	lpUm, low, high float64
 }
 
+// noiseTrust is the standard deviation of the logarithm of the noise beyond what the fitted scale says, for corrections that rest on
+// modes finer than those fitted.
+const noiseTrust = 0.1
+
+// widen adds, in quadrature in the logarithm, to the interval low to high of value what the corrections may be wrong by: estimate is asked again
+// with relaxation times one fitted standard deviation, ratioSD, up and down and with the noise up and down. An answer that is NaN opens
+// the interval.
+func widen(value, low, high float64, t theory, ratioSD float64, estimate func(theory) float64) (float64, float64) {
+	if math.IsNaN(value) || math.IsNaN(low) {
+		return low, high
+	}
+	const z = 1.959964
+	up, down := math.Pow(math.Log(high/value), 2), math.Pow(math.Log(low/value), 2)
+	ratioSD = math.Min(ratioSD, 3)
+	for _, change := range [][2]theory{
+		{{t.lpUm, t.dragPaS * math.Exp(-ratioSD), t.noiseScale, t.lpUnresolved}, {t.lpUm, t.dragPaS * math.Exp(ratioSD), t.noiseScale, t.lpUnresolved}},
+		{{t.lpUm, t.dragPaS, t.noiseScale * math.Exp(-noiseTrust), t.lpUnresolved}, {t.lpUm, t.dragPaS, t.noiseScale * math.Exp(noiseTrust), t.lpUnresolved}},
+	} {
+		most, least := 0.0, 0.0
+		for _, c := range change {
+			v := estimate(c)
+			if math.IsNaN(v) {
+				v = math.Inf(1)
+			}
+			most, least = math.Max(most, z*math.Log(v/value)), math.Min(least, z*math.Log(v/value))
+		}
+		up, down = up+most*most, down+least*least
+	}
+	return value * math.Exp(-math.Sqrt(down)), value * math.Exp(math.Sqrt(up))
+}
+
 // fitDistance compares the mean-square distance between the ends with the fixed contour length in the plane,
 // ⟨R²⟩ = 4LpL[1-(2Lp/L)(1-e^(-L/2Lp))].
 //

@@ -23,6 +23,7 @@ type tangentFit struct {
 type tangentRow struct {
 	Separation
 	steps int
+	turns []float64 // of the beam modes, see turn
 }
 
 // tangentCorrelation returns the mean cosine of the turn between two places of the contour as a function of their separation, over frames and
@@ -42,7 +43,7 @@ func tangentCorrelation(a amplitudes, t theory) (rows []tangentRow, stepUm float
 	stepUm = a.lengthUm / float64(cells)
 	stride := max(1, cells/50)
 	for j := stride; j <= cells*3/4; j += stride {
-		rows = append(rows, tangentRow{Separation{SeparationUm: float64(j) * stepUm}, j})
+		rows = append(rows, tangentRow{Separation{SeparationUm: float64(j) * stepUm}, j, nil})
 	}
 	angle := make([]float64, cells)
 	sums := make([]float64, len(rows))
@@ -61,6 +62,9 @@ func tangentCorrelation(a amplitudes, t theory) (rows []tangentRow, stepUm float
 	spread := a.turnSpreads(t)
 	for r := range rows {
 		row := &rows[r]
+		for m := range max(theoryModes, a.held) {
+			row.turns = append(row.turns, turn(m+1, row.SeparationUm, a.lengthUm))
+		}
 		row.CosMean = sums[r] / float64(len(a.chords))
 		row.CosLow, row.CosHigh = math.NaN(), math.NaN()
 		if !(row.CosMean > 0) {
@@ -68,7 +72,7 @@ func tangentCorrelation(a amplitudes, t theory) (rows []tangentRow, stepUm float
 		}
 		variance := 0.0
 		for m, s := range spread {
-			d := turn(m+1, row.SeparationUm, a.lengthUm)
+			d := row.turns[m]
 			variance += s * d * d / 4
 		}
 		q := -math.Log(row.CosMean)
@@ -134,7 +138,7 @@ func (a amplitudes) turnSpreads(t theory) []float64 {
 // fitTangent fits the line -ln⟨cos⟩ = s/(2Lp) + intercept from where blur and the smoothing of the contour no longer bend it
 // to half the length. The intercept takes the noise and the turns that the exposure averaged away; what blur takes from the slope itself, and what noise
 // adds to it, is computed from the fitted drag and put back. The separations are correlated: the interval comes from the modes behind
-// them. An intrinsic bend stays in.
+// them. An intrinsic bend stays in. It marks the rows it uses.
 func fitTangent(a amplitudes, rows []tangentRow, t theory, o Options) tangentFit {
 	nan := math.NaN()
 	fit := tangentFit{nan, nan, nan, nan, nan, nan, nan}
@@ -149,8 +153,8 @@ func fitTangent(a amplitudes, rows []tangentRow, t theory, o Options) tangentFit
 	used := 0
 	for i := range rows {
 		r := &rows[i]
-		if r.SeparationUm >= from && r.SeparationUm <= to && r.CosMean > 0.05 {
-			r.Used = true
+		r.Used = r.SeparationUm >= from && r.SeparationUm <= to && r.CosMean > 0.05
+		if r.Used {
 			used++
 			w := 1 / (r.SeparationUm * r.SeparationUm)
 			sw += w
@@ -179,7 +183,7 @@ func fitTangent(a amplitudes, rows []tangentRow, t theory, o Options) tangentFit
 		slope += c * q
 		level += w * (sxx - sx*r.SeparationUm) / det * q
 		for m := range contrast {
-			contrast[m] += c * turn(m+1, r.SeparationUm, a.lengthUm) / 2
+			contrast[m] += c * r.turns[m] / 2
 		}
 	}
 	fit.slopePerUm, fit.intercept = slope, level
