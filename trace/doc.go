@@ -18,11 +18,12 @@
 // under the camera's own noise: a line of light, blurred by a Gaussian, whose normal
 // displacement is a cubic B-spline. What the pixels say about displacement is, per length,
 // λJ/s² (one-dimensional analogue of Mortensen, Churchman, Spudich & Flyvbjerg, Nat.
-// Methods 7:377 (2010), cited from memory), so that a spline coefficient has nothing to
-// gain from knots nearer than about three line widths: there the Gaussian has wiped the
-// shape out. The knots are knotsPerWidth line widths apart; shapes with wavelengths above
-// about 1.1 µm (for a line 0.13 µm wide) come through unchanged, because the fit includes
-// the blur instead of smoothing on top of it.
+// Methods 7:377 (2010), cited from memory), and no knots nearer than about three line widths
+// have anything to gain: there the Gaussian has wiped the shape out. How far apart the knots
+// are, 3 to 8 line widths, is chosen per movie by the light and the bends that it has
+// ([Conditions].KnotWidths). Shapes with wavelengths above [Conditions.ResolvedWidths] line
+// widths come through unchanged, because the fit includes the blur instead of smoothing on
+// top of it.
 //
 // # Limits
 //

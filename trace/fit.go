@@ -7,11 +7,6 @@ import (
 )
 
 const (
-	// knotsPerWidth is the distance between the knots of the centreline in line widths.
-	knotsPerWidth = 4.0
-	// ResolvedWidths is the shortest wavelength that a contour carries unchanged, in line widths
-	// (the standard deviation of the profile): a little over two knots.
-	ResolvedWidths = 2.3 * knotsPerWidth
 	// brightnessKnots and backgroundKnots are the distances between the knots of the line's
 	// brightness and of the background beside it, in line widths.
 	brightnessKnots = 8
@@ -61,6 +56,7 @@ type fitted struct {
 type fitter struct {
 	camera imaging.Camera
 	width  float64 // standard deviation of the line's profile, pixel included
+	knots  float64 // distance between the knots of the centreline, line widths
 
 	nodes, normals []xy
 	at             []float64  // arc length of each node

@@ -74,7 +74,7 @@ func (f *fitter) bendAt(j, direction int) float64 {
 
 func (f *fitter) layBases() {
 	e0, e1 := f.ends[0], f.ends[1]
-	f.shape = cubicOver(e0, e1, knotsPerWidth*f.width)
+	f.shape = cubicOver(e0, e1, f.knots*f.width)
 	f.light = cubicOver(e0, e1, brightnessKnots*f.width)
 	f.smear = cubicOver(e0, e1, smearKnots*f.width)
 	f.under = hatsOver(e0, e1, backgroundKnots*f.width)

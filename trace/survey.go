@@ -28,6 +28,8 @@ const (
 	// firstWidthPx is the line width that a survey starts from: a well sampled image has
 	// between one and two pixels per standard deviation of its PSF (common practice).
 	firstWidthPx = 1.4
+	// firstKnotWidths is the distance between knots until it is chosen.
+	firstKnotWidths = 4
 )
 
 // Survey measures the line width and the camera noise on a dozen frames spread over the movie, in
@@ -58,7 +60,7 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 		}
 		level = append(level, mean/float64(len(back.Pix)))
 	}
-	c := Conditions{WidthPx: firstWidthPx, MaxCount: hint.MaxCount}
+	c := Conditions{WidthPx: firstWidthPx, KnotWidths: firstKnotWidths, MaxCount: hint.MaxCount}
 	// Until the residuals have spoken the noise is taken as the background's everywhere.
 	c.Camera = imaging.Camera{GainCounts: 1e-6, OffsetCounts: 0, ReadVariance: max(sq(median(noise)), 1.0/12)}
 	var samples imaging.NoiseSamples
@@ -96,7 +98,9 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 	if math.IsNaN(c.MaxCount) || c.MaxCount == 0 {
 		c.MaxCount = math.Inf(1)
 	}
-	return c, nil
+	var err error
+	c.KnotWidths, err = chooseKnots(frames, o, c, lines)
+	return c, err
 }
 
 // residuals adds half the squared difference of the residuals of neighbouring pixels to samples, with

@@ -13,10 +13,16 @@ type Conditions struct {
 	// WidthPx is the standard deviation of a line's profile in pixels, the pixel's own
 	// width included.
 	WidthPx float64
-	Camera  imaging.Camera
+	// KnotWidths is the distance between the knots of the centreline, in line widths.
+	KnotWidths float64
+	Camera     imaging.Camera
 	// MaxCount is the largest value a pixel can have, +Inf if unknown.
 	MaxCount float64
 }
+
+// ResolvedWidths is the shortest wavelength that contours traced with c carry unchanged, in line
+// widths (the standard deviation of the profile): a little over two knots.
+func (c Conditions) ResolvedWidths() float64 { return 2.3 * c.KnotWidths }
 
 // Tracer finds and fits the contours of one frame after another. It keeps its memory between
 // frames; give each goroutine its own.
@@ -40,6 +46,9 @@ func NewTracer(o Options, c Conditions) (*Tracer, error) {
 	if !(c.WidthPx > 0) {
 		return nil, fmt.Errorf("trace: line width %g pixels, want a positive one", c.WidthPx)
 	}
+	if !(c.KnotWidths >= 2) {
+		return nil, fmt.Errorf("trace: knots %g line widths apart, want 2 or more", c.KnotWidths)
+	}
 	return &Tracer{options: o.withDefaults(), conditions: c}, nil
 }
 
@@ -56,7 +65,7 @@ func (t *Tracer) Frame(frame imaging.Frame, number int) ([]Contour, error) {
 		if c.spot {
 			continue
 		}
-		t.fitter.camera, t.fitter.width = t.conditions.Camera, width
+		t.fitter.camera, t.fitter.width, t.fitter.knots = t.conditions.Camera, width, t.conditions.KnotWidths
 		others := func(pixel int) bool { return t.owner.foreign(pixel, i) }
 		r, err := t.fitter.fit(frame, t.background, others, c.path)
 		// A line out of focus is wider: fit it again with its own width.

@@ -104,14 +104,15 @@ func Measure(ctx context.Context, src trace.Source, info imaging.Info, s Setting
 	if err != nil {
 		return nil, err
 	}
+	width := conditions.WidthPx * s.PixelUm
 	r := &Result{Version: Version, RidgeImplementation: ridge.Implementation(), Settings: s, Info: info,
-		Camera: conditions.Camera, TimesS: times(info, s)}
+		Camera: conditions.Camera, Optics: Optics{width, width * conditions.ResolvedWidths()}, TimesS: times(info, s)}
 	for i := range traced {
 		if err := ctx.Err(); err != nil {
 			return nil, err
 		}
 		traced[i].Quantise()
-		r.Filaments = append(r.Filaments, Analyse(traced[i], r.TimesS, s, conditions.WidthPx*s.PixelUm))
+		r.Filaments = append(r.Filaments, Analyse(traced[i], r.TimesS, s, r.Optics))
 	}
 	r.PictureFrame = bestFrame(r.Filaments, s)
 	if err := src.ReadFrame(r.PictureFrame, &r.Picture); err != nil {
@@ -136,12 +137,12 @@ func times(info imaging.Info, s Settings) []float64 {
 	return out
 }
 
-// Analyse turns a traced filament (quantised already) into numbers. widthUm is the standard deviation
-// of the line's profile, pixel included.
-func Analyse(f trace.Filament, timesS []float64, s Settings, widthUm float64) Filament {
-	series := SeriesOf(f, timesS, s, widthUm)
+// Analyse turns a traced filament (quantised already) into numbers. optics is what its
+// movie resolves.
+func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Filament {
+	series := SeriesOf(f, timesS, s, optics.LineWidthUm)
 	o := modes.DefaultOptions()
-	o.ResolutionPSF = trace.ResolvedWidths
+	o.ResolutionPSF = optics.ResolvedUm / optics.LineWidthUm
 	out := Filament{Filament: f, Series: series, Result: modes.Analyse(series, o),
 		LengthUm: series.LengthUm, LengthSDUm: series.LengthSDUm, FramesUsed: len(series.Curves)}
 	var snr, photons, background, width, errors []float64

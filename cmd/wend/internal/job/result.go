@@ -43,6 +43,12 @@ type Warning struct {
 	Code, Text string
 }
 
+// Optics is what a movie resolves, in µm: the standard deviation of a line's profile, pixel and motion
+// included, and the shortest wavelength that its contours carry unchanged.
+type Optics struct {
+	LineWidthUm, ResolvedUm float64
+}
+
 // Result is everything that one stack gave.
 type Result struct {
 	// Name is the folder of the results, StackPath the input as the user gave it, SHA256 its hash in hex.
@@ -52,6 +58,7 @@ type Result struct {
 	Settings                Settings
 	Info                    imaging.Info
 	Camera                  imaging.Camera
+	Optics                  Optics
 	// TimesS is the time of every frame of the stack that was analysed, by frame number.
 	TimesS    []float64
 	Filaments []Filament
