@@ -182,7 +182,7 @@ func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series
 	case math.IsInf(distance.high, 1):
 		note = "no upper limit: the corrections for noise and exposure are as large as the contraction"
 	case math.IsNaN(distance.lpUm):
-		note = "the ends are as far apart as the contour is long, within the noise"
+		note = "the ends are as far apart as the contour is long within the noise, or the exposure hides most of the contraction"
 	}
 	r.add(QuantityLp, MethodDistance, distance.lpUm, distance.low, distance.high, note)
 }

@@ -42,13 +42,17 @@ func widen(value, low, high float64, t theory, ratioSD float64, estimate func(th
 	return value * math.Exp(-math.Sqrt(down)), value * math.Exp(math.Sqrt(up))
 }
 
+// mostHidden is the share of the contraction that may be hidden by exposure and optics: beyond it the ends would tell the
+// correction rather than the stiffness.
+const mostHidden = 0.5
+
 // fitDistance compares the mean-square distance between the ends with the fixed contour length in the plane,
 // ⟨R²⟩ = 4LpL[1-(2Lp/L)(1-e^(-L/2Lp))].
 //
 // Corrected are: the errors of the ends in R², along the line (lengthSEUm is the standard error of one frame's length) and across;
 // the length that noise adds to the contour and the length of the undulations that exposure and optics hide. An intrinsic bend counts as
 // flexibility. The interval has the shapes of the modes behind R and the error of the fixed length, taken as the scatter of the lengths,
-// lengthSDUm, over the root of the frames.
+// lengthSDUm, over the root of the frames. NaN where the ends are not nearer than the contour is long, or most of the contraction is hidden.
 func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanceFit {
 	fit := distanceFit{math.NaN(), math.NaN(), math.NaN()}
 	l, frames := a.lengthUm, float64(len(a.curves))
@@ -111,6 +115,12 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 		variance += s * e * e
 	}
 	contraction := length(fit.lpUm) - math.Sqrt(math.Max(0, r2))
+	hidden := length(fit.lpUm) - a.measuredUm
+	if hidden > mostHidden*contraction {
+		return distanceFit{math.NaN(), math.NaN(), math.NaN()}
+	}
+	// The hidden length is known to first order; its square over the length stands for the rest.
+	variance += math.Pow(hidden*hidden/l, 2)
 	if contraction > 0 && variance > 0 {
 		low, high := scaledInterval(1, variance/(contraction*contraction))
 		fit.low, fit.high = fit.lpUm/high, fit.lpUm/low

@@ -12,6 +12,9 @@ import (
 // or are summed in closed form.
 const theoryModes = 32
 
+// leastSeen is the share of the slope that the exposure must leave for the tangent correlation to give an estimate.
+const leastSeen = 0.3
+
 // tangentFit is the line -ln⟨cos⟩ = slope·s + intercept and what it says.
 type tangentFit struct {
 	slopePerUm, intercept float64
@@ -204,7 +207,7 @@ func fitTangent(a amplitudes, rows []tangentRow, t theory, o Options) tangentFit
 		}
 	}
 	thermal := slope - noise
-	if thermal > 0 && seen > 0.05 {
+	if thermal > 0 && seen > leastSeen {
 		low, high := scaledInterval(thermal, variance)
 		fit.lpUm, fit.low, fit.high = seen/(2*thermal), seen/(2*high), seen/(2*low)
 	}
