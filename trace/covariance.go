@@ -24,7 +24,7 @@ func (f *fitter) curve(s float64) xy {
 // stops are evenly spaced arc lengths of the reference path from end to end.
 func (f *fitter) stops() []float64 {
 	e0, e1 := f.parameters[f.endsIdx[0]], f.parameters[f.endsIdx[1]]
-	count := max(2, int(math.Round((e1-e0)/(nodeSpacing*f.width))))
+	count := max(2, int(math.Round((e1-e0)/(pointSpacing*f.width))))
 	out := make([]float64, count+1)
 	for i := range out {
 		out[i] = e0 + (e1-e0)*float64(i)/float64(count)

@@ -52,6 +52,7 @@ func (d *detector) find(m *ridge.Map, low, high, scale, gap, minLength float64) 
 			out[i].spot = true
 		}
 	}
+	grow(out, m, scale)
 	return out
 }
 

@@ -12,8 +12,10 @@ const (
 	brightnessKnots = 8
 	backgroundKnots = 16
 	// nodeSpacing is the distance between the points whose Gaussians add up to the line, in
-	// line widths. The trapezoid sum of Gaussians h apart has a ripple of 2·exp(-2π²s²/h²): 1e-15 here.
-	nodeSpacing = 0.75
+	// line widths. The trapezoid sum of Gaussians h apart has a ripple of 2·exp(-2π²s²/h²): 2e-6 here.
+	nodeSpacing = 1.2
+	// pointSpacing is the distance between the points of the resulting centreline, in line widths.
+	pointSpacing = 0.75
 	// smearKnots is the distance between the knots of the profile's extra variance, in line widths. A
 	// filament moves during the exposure, here more and there less, and its free ends twice as far as
 	// the rest.
@@ -26,7 +28,7 @@ const (
 	// carries no bending moment: no bending mode that is resolved has a curvature there.
 	endCurvatureSD = 0.03
 	// reach is how far from the line pixels are used and how far a Gaussian is drawn, in line widths.
-	reach = 4.0
+	reach = 3.6
 )
 
 var (
@@ -37,7 +39,7 @@ var (
 
 // fitted is a centreline in pixels with what the pixels say about it.
 type fitted struct {
-	points []xy      // about nodeSpacing line widths apart, from end to end
+	points []xy      // about pointSpacing line widths apart, from end to end
 	se     []float64 // standard error across the line at each point
 	// length is free of the lengthening by noise; lengthSE and endsSE are standard errors.
 	length, lengthSE float64

@@ -14,12 +14,12 @@ const knotFits = 36
 // centreline: the least χ² + 2·(number of coefficients), Mallows, Technometrics 15:661 (1973) (cited
 // from memory), summed over lines and frames. Where there is light enough, or bends are sharp, the
 // knots are close; where short waves are lost in the noise or blurred by the exposure, they are far
-// apart and keep that noise out. lines is how many fits the frames gave in all.
+// apart and keep that noise out. lines is how many fits the frames give in all.
 func chooseKnots(frames []imaging.Frame, o Options, c Conditions, lines int) (float64, error) {
 	if lines == 0 {
 		return knotChoices[len(knotChoices)/2], nil
 	}
-	stride := max(1, lines/knotFits)
+	frames = spreadOut(frames, max(2, len(frames)*knotFits/lines))
 	best, least := 0.0, 0.0
 	scale := 1.0
 	for k, knots := range knotChoices {
@@ -34,7 +34,7 @@ func chooseKnots(frames []imaging.Frame, o Options, c Conditions, lines int) (fl
 			pixels += float64(len(f.pixels))
 			coefficients += float64(f.size)
 		}
-		for i := 0; i < len(frames); i += stride {
+		for i := range frames {
 			if _, err := tracer.Frame(frames[i], i); err != nil {
 				return 0, err
 			}

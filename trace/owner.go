@@ -13,16 +13,6 @@ type ownerMap struct {
 	owner         []int32   // candidate + 1; 0 nobody; -1 saturated
 	distance      []float32 // squared, pixels², where owner is above 0
 	dirty         []int     // pixels set
-	work          imaging.Frame
-}
-
-// difference returns frame minus background, in memory that is reused.
-func (m *ownerMap) difference(frame, background imaging.Frame) imaging.Frame {
-	m.work.Resize(frame.Width, frame.Height)
-	for i, v := range frame.Pix {
-		m.work.Pix[i] = v - background.Pix[i]
-	}
-	return m.work
 }
 
 func (m *ownerMap) assign(list []candidate, frame imaging.Frame, c Conditions) {

@@ -25,6 +25,8 @@ type CameraHint struct {
 
 const (
 	surveyFrames = 12
+	// surveyLines is about how many lines are enough.
+	surveyLines = 40
 	// firstWidthPx is the line width that a survey starts from: a well sampled image has
 	// between one and two pixels per standard deviation of its PSF (common practice).
 	firstWidthPx = 1.4
@@ -37,6 +39,7 @@ const (
 // from the residuals of the fits against the fitted light. Both need no filament to stand still.
 // first and last bound the frames, both included.
 func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions, error) {
+	o = o.withDefaults()
 	if last < first {
 		return Conditions{}, ErrNoFrames
 	}
@@ -73,7 +76,7 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 		samples = imaging.NoiseSamples{}
 		var widths []float64
 		tracer.observe = func(f *fitter, r fitted) {
-			if r.widthSE > 0 && r.widthSE < 0.3*f.width {
+			if r.length*o.PixelUm >= o.MinLengthUm && r.widthSE > 0 && r.widthSE < 0.3*f.width {
 				widths = append(widths, min(max(f.width+r.widthStep, f.width*0.6), f.width*1.6))
 			}
 			f.residuals(frames[0].Width, &samples)
@@ -84,6 +87,9 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 			}
 		}
 		lines = len(widths)
+		if len(frames) > 3 && lines > 2*surveyLines { // a crowded field says as much in fewer frames
+			frames = spreadOut(frames, max(3, len(frames)*surveyLines/lines))
+		}
 		if lines > 0 {
 			c.WidthPx = min(max(median(widths), 0.7), 8)
 		}
@@ -101,6 +107,18 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 	var err error
 	c.KnotWidths, err = chooseKnots(frames, o, c, lines)
 	return c, err
+}
+
+// spreadOut returns n of the frames, evenly spread.
+func spreadOut(frames []imaging.Frame, n int) []imaging.Frame {
+	if n >= len(frames) {
+		return frames
+	}
+	out := make([]imaging.Frame, n)
+	for i := range out {
+		out[i] = frames[i*(len(frames)-1)/max(1, n-1)]
+	}
+	return out
 }
 
 // residuals adds half the squared difference of the residuals of neighbouring pixels to samples, with

@@ -30,6 +30,7 @@ type Tracer struct {
 	options    Options
 	conditions Conditions
 	background imaging.Frame
+	binned     binnedFrame
 	ridges     ridge.Map
 	detector   detector
 	fitter     fitter
@@ -87,21 +88,38 @@ func (t *Tracer) Frame(frame imaging.Frame, number int) ([]Contour, error) {
 // detect leaves the frame's background, ridge map and pixel owners behind, and returns candidates.
 func (t *Tracer) detect(frame imaging.Frame) ([]candidate, error) {
 	imaging.EstimateBackground(frame, backgroundBlockPx, &t.background)
-	work := t.owner.difference(frame, t.background)
 	noise := imaging.NoiseStd(frame, t.background)
 	if !(noise > 0) {
 		noise = math.Sqrt(1.0 / 12)
 	}
-	o := t.options
-	err := ridge.Compute(work, ridge.Options{SigmaPx: ridgeWidths * t.conditions.WidthPx, NoiseCounts: noise, Floor: 1}, &t.ridges)
+	o, width := t.options, t.conditions.WidthPx
+	// A filter much wider than a pixel sees as much in fewer, larger pixels.
+	bin := max(1, int(ridgeWidths*width/leastRidgePx))
+	t.binned.average(frame, t.background, bin)
+	scale := width / float64(bin)
+	err := ridge.Compute(t.binned.Frame, ridge.Options{SigmaPx: ridgeWidths * scale, NoiseCounts: noise / float64(bin),
+		Floor: ridgeFloor}, &t.ridges)
 	if err != nil {
 		return nil, err
 	}
-	candidates := t.detector.find(&t.ridges, o.StrengthLow, o.StrengthHigh, t.conditions.WidthPx,
-		o.GapUm/o.PixelUm, o.MinLengthUm/o.PixelUm/2)
+	px := o.PixelUm * float64(bin)
+	candidates := t.detector.find(&t.ridges, o.StrengthLow, o.StrengthHigh, scale, o.GapUm/px, o.MinLengthUm/px/2)
+	for _, c := range candidates {
+		for i, p := range c.path {
+			// The centre of the first large pixel is the mean of the small ones' centres.
+			c.path[i] = p.times(float64(bin)).plus(xy{float64(bin-1) / 2, float64(bin-1) / 2})
+		}
+	}
 	t.owner.assign(candidates, frame, t.conditions)
 	return candidates, nil
 }
+
+// leastRidgePx is the least scale of the ridge filter, in its own pixels, to which pixels are put
+// together; ridgeFloor is the strength below which the map is not worked out.
+const (
+	leastRidgePx = 1.2
+	ridgeFloor   = 1.5
+)
 
 // ridgeWidths is the scale of the ridge filter in line widths w. A line's response over the filter's
 // noise grows with the scale σ as σ³/(σ²+w²)^1.5, 0.35 at w, 0.58 at 1.5 w, 0.72 at 2 w; what lies

@@ -144,8 +144,8 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 	o := modes.DefaultOptions()
 	o.ResolutionPSF = optics.ResolvedUm / optics.LineWidthUm
 	out := Filament{Filament: f, Series: series, Result: modes.Analyse(series, o),
-		LengthUm: series.LengthUm, LengthSDUm: series.LengthSDUm, FramesUsed: len(series.Curves)}
-	var snr, photons, background, width, errors []float64
+		FramesUsed: len(series.Curves)}
+	var lengths, snr, photons, background, width, errors []float64
 	ends := [2]map[trace.End]int{{}, {}}
 	for _, c := range f.Contours {
 		for k, e := range c.Ends {
@@ -156,6 +156,7 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 		if !c.Used() {
 			continue
 		}
+		lengths = append(lengths, c.LengthUm)
 		snr = append(snr, c.SNR)
 		photons = append(photons, c.PhotonsPerUm)
 		background = append(background, c.BackgroundPerUm2)
@@ -166,6 +167,7 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 		}
 		errors = append(errors, median(se))
 	}
+	out.LengthUm, out.LengthSDUm = median(lengths), deviation(lengths)
 	out.SNR, out.PhotonsPerUm, out.BackgroundPerUm2 = median(snr), median(photons), median(background)
 	out.PSFUm, out.LocalisationUm = median(width), median(errors)
 	for k := range ends {
@@ -188,6 +190,8 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, widthUm float64) m
 		if !c.Used() {
 			continue
 		}
+		// modes corrects for what noise adds to a length and what blur hides of it.
+		lengths = append(lengths, c.Points[len(c.Points)-1].SUm)
 		curve := modes.Curve{XUm: make([]float64, len(c.Points)), YUm: make([]float64, len(c.Points))}
 		for i, p := range c.Points {
 			curve.XUm[i], curve.YUm[i] = p.XUm, p.YUm
@@ -195,7 +199,6 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, widthUm float64) m
 		out.Curves = append(out.Curves, curve)
 		out.TimesS = append(out.TimesS, timesS[c.Frame])
 		out.NoiseUm3 = append(out.NoiseUm3, c.NoiseUm3)
-		lengths = append(lengths, c.LengthUm)
 		errors = append(errors, c.LengthSEUm)
 	}
 	out.LengthUm, out.LengthSEUm, out.LengthSDUm = median(lengths), median(errors), deviation(lengths)
