@@ -3,6 +3,8 @@ package trace
 import (
 	"errors"
 
+	"gonum.org/v1/gonum/blas/blas64"
+
 	"wend/imaging"
 )
 
@@ -71,8 +73,8 @@ type fitter struct {
 	endVariance    [2]float64 // of the profile there
 
 	shape     cubic
-	light     cubic
-	smear     cubic
+	light     hats
+	smear     hats
 	under     hats
 	shapeIdx  []int // index of each parameter in the normal equations, ordered along the line
 	lightIdx  []int
@@ -83,8 +85,8 @@ type fitter struct {
 	bandwidth int
 
 	shapeBasis []basis4
-	lightBasis []basis4
-	smearBasis []basis4
+	lightBasis []basis2
+	smearBasis []basis2
 	underBasis []basis2
 
 	parameters     []float64
@@ -99,10 +101,11 @@ type fitter struct {
 	variance       []float64 // of the profile at each node, pixels²
 	slopes         []float64 // of the pixel in hand, by parameter
 	alongX, alongY []float64 // Gaussians of the nodes, span long each
-	corner         [][2]float64
+	drawn          []drawn
 	span           int
 	lightNow       []float64
-	trial          []float64
+	trial, before  []float64
+	triangle       blas64.TriangularBand // the normal equations' factor
 }
 
 // fit fits a centreline that starts from path. pixels (by index) that excluded names are left out;
@@ -114,7 +117,7 @@ func (f *fitter) fit(frame, background imaging.Frame, excluded func(pixel int) b
 	ends := [2]float64{0, length}
 	var light, smear, under []float64
 	for pass := 0; ; pass++ {
-		if err := f.prepare(frame, background, excluded, path, ends); err != nil {
+		if err := f.prepare(frame, background, excluded, path, ends, pass == 0); err != nil {
 			return fitted{}, err
 		}
 		f.startFrom(light, smear, under)

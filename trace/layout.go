@@ -18,18 +18,22 @@ type pixel struct {
 	low, high       int32 // parameters it depends on
 }
 
+// basis4 and basis2 are the basis functions that are not zero at a node: the number of the first, their
+// values, and the indices of their coefficients among the parameters.
 type basis4 struct {
 	first int
 	w     [4]float64
+	index [4]int32
 }
 
 type basis2 struct {
 	first int
 	w     [2]float64
+	index [2]int32
 }
 
 // prepare lays the nodes, the bases, the parameters and the band of pixels along path.
-func (f *fitter) prepare(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy, ends [2]float64) error {
+func (f *fitter) prepare(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy, ends [2]float64, half bool) error {
 	step := nodeSpacing * f.width
 	margin := reach * f.width
 	span := ends[1] - ends[0]
@@ -55,7 +59,7 @@ func (f *fitter) prepare(frame, background imaging.Frame, excluded func(pixel in
 	}
 	f.endCurvature = [2]float64{f.bendAt(outer, 1), f.bendAt(outer+inner, -1)}
 	f.layBases()
-	return f.layPixels(frame, background, excluded)
+	return f.layPixels(frame, background, excluded, half)
 }
 
 // bendAt is the curvature of the reference path at node j, along the normal, from the two line widths
@@ -75,8 +79,8 @@ func (f *fitter) bendAt(j, direction int) float64 {
 func (f *fitter) layBases() {
 	e0, e1 := f.ends[0], f.ends[1]
 	f.shape = cubicOver(e0, e1, f.knots*f.width)
-	f.light = cubicOver(e0, e1, brightnessKnots*f.width)
-	f.smear = cubicOver(e0, e1, smearKnots*f.width)
+	f.light = hatsOver(e0, e1, brightnessKnots*f.width)
+	f.smear = hatsOver(e0, e1, smearKnots*f.width)
 	f.under = hatsOver(e0, e1, backgroundKnots*f.width)
 	// Parameters in the order of their place along the line make the normal equations banded.
 	type place struct {
@@ -117,11 +121,19 @@ func (f *fitter) layBases() {
 		b := &f.shapeBasis[j]
 		b.first, b.w = f.shape.weights(s)
 		l := &f.lightBasis[j]
-		l.first, l.w = f.light.weights(min(max(s, e0), e1))
+		l.first, l.w = f.light.weights(s)
 		m := &f.smearBasis[j]
-		m.first, m.w = f.smear.weights(min(max(s, e0), e1))
+		m.first, m.w = f.smear.weights(s)
 		u := &f.underBasis[j]
 		u.first, u.w = f.under.weights(s)
+		for k := range b.index {
+			b.index[k] = int32(f.shapeIdx[b.first+k])
+		}
+		for k := range l.index {
+			l.index[k] = int32(f.lightIdx[l.first+k])
+			m.index[k] = int32(f.smearIdx[m.first+k])
+			u.index[k] = int32(f.underIdx[u.first+k])
+		}
 	}
 	f.parameters = resize(f.parameters, f.size)
 	clear(f.parameters)
@@ -129,7 +141,7 @@ func (f *fitter) layBases() {
 }
 
 // layPixels gathers the pixels within reach of the nodes and the nodes within reach of each.
-func (f *fitter) layPixels(frame, background imaging.Frame, excluded func(pixel int) bool) error {
+func (f *fitter) layPixels(frame, background imaging.Frame, excluded func(pixel int) bool, half bool) error {
 	r := reach * f.width
 	w, h := frame.Width, frame.Height
 	f.nearest = resize(f.nearest, w*h)
@@ -154,7 +166,7 @@ func (f *fitter) layPixels(frame, background imaging.Frame, excluded func(pixel 
 					}
 					continue
 				}
-				if excluded != nil && excluded(i) {
+				if half && (x+y)%2 != 0 || excluded != nil && excluded(i) {
 					continue
 				}
 				below := float64(background.Pix[i])
@@ -198,7 +210,7 @@ func (f *fitter) touched(first, last, nearest int) (lo, hi int) {
 	under := f.underBasis[nearest].first
 	lo = min(f.shapeIdx[f.shapeBasis[first].first], f.lightIdx[f.lightBasis[first].first],
 		f.smearIdx[f.smearBasis[first].first], f.underIdx[under])
-	hi = max(f.shapeIdx[f.shapeBasis[last].first+3], f.lightIdx[f.lightBasis[last].first+3],
-		f.smearIdx[f.smearBasis[last].first+3], f.underIdx[under+1])
+	hi = max(f.shapeIdx[f.shapeBasis[last].first+3], f.lightIdx[f.lightBasis[last].first+1],
+		f.smearIdx[f.smearBasis[last].first+1], f.underIdx[under+1])
 	return lo, hi
 }

@@ -11,20 +11,24 @@ func (f *fitter) pick(index []int) []float64 {
 	return out
 }
 
-// startFrom takes the light, the smear and the background of the pass before, if they have the same knots.
+// startFrom takes the light, the smear and the background of the pass before, whose ends may have moved
+// a little; nil starts from the pixels.
 func (f *fitter) startFrom(light, smear, under []float64) {
-	if len(light) != len(f.lightIdx) || len(smear) != len(f.smearIdx) || len(under) != len(f.underIdx) {
+	if light == nil {
 		f.startLight()
 		return
 	}
-	for k, i := range f.lightIdx {
-		f.parameters[i] = light[k]
-	}
-	for k, i := range f.smearIdx {
-		f.parameters[i] = smear[k]
-	}
-	for k, i := range f.underIdx {
-		f.parameters[i] = under[k]
+	f.put(f.lightIdx, light)
+	f.put(f.smearIdx, smear)
+	f.put(f.underIdx, under)
+}
+
+// put sets the parameters at the given indices to values, stretched to their number.
+func (f *fitter) put(index []int, values []float64) {
+	for k, i := range index {
+		at := float64(k) * float64(len(values)-1) / float64(len(index)-1)
+		low := min(int(at), len(values)-2)
+		f.parameters[i] = values[low] + (at-float64(low))*(values[low+1]-values[low])
 	}
 }
 
@@ -52,9 +56,10 @@ func (f *fitter) startLight() {
 	}
 }
 
-// largest is the largest displacement of the line between its ends, in pixels, for shape parameters p.
-func (f *fitter) largest(p []float64) float64 {
-	most := 0.0
+// displacement is how far the shape parameters p move the line between its ends, in pixels: at most, and
+// as the root of the mean square.
+func (f *fitter) displacement(p []float64) (most, typical float64) {
+	count := 0
 	for j := range f.at {
 		if f.weight[j] == 0 {
 			continue
@@ -62,11 +67,13 @@ func (f *fitter) largest(p []float64) float64 {
 		u := 0.0
 		b := &f.shapeBasis[j]
 		for k, w := range b.w {
-			u += w * p[f.shapeIdx[b.first+k]]
+			u += w * p[b.index[k]]
 		}
 		most = max(most, math.Abs(u))
+		typical += u * u
+		count++
 	}
-	return most
+	return most, math.Sqrt(typical / float64(max(1, count)))
 }
 
 // place puts the nodes where the parameters say.
@@ -78,13 +85,13 @@ func (f *fitter) place() {
 		u := 0.0
 		b := &f.shapeBasis[j]
 		for i, w := range b.w {
-			u += w * f.parameters[f.shapeIdx[b.first+i]]
+			u += w * f.parameters[b.index[i]]
 		}
 		f.now[j] = f.nodes[j].plus(f.normals[j].times(u))
 		l := 0.0
 		c := &f.lightBasis[j]
 		for i, w := range c.w {
-			l += w * f.parameters[f.lightIdx[c.first+i]]
+			l += w * f.parameters[c.index[i]]
 		}
 		f.lightNow[j] = l
 		left := min(max((s-e0)/step+0.5, 0), 1)
@@ -93,7 +100,7 @@ func (f *fitter) place() {
 		f.variance[j] = f.width * f.width
 		m := &f.smearBasis[j]
 		for i, w := range m.w {
-			f.variance[j] += w * f.parameters[f.smearIdx[m.first+i]]
+			f.variance[j] += w * f.parameters[m.index[i]]
 		}
 		f.variance[j] = min(max(f.variance[j], sq(0.8*f.width)), sq(widest*f.width))
 	}
@@ -105,15 +112,17 @@ func (f *fitter) place() {
 	}
 }
 
-// accumulate builds the normal equations and chi² at the present parameters. robust gives pixels
-// more than five standard deviations off less weight.
-func (f *fitter) accumulate(robust bool) {
+// accumulate builds chi², its gradient and, if normal says so, the normal equations at the present
+// parameters. robust gives pixels more than five standard deviations off less weight.
+func (f *fitter) accumulate(robust, normal bool) {
 	n, stride := f.size, f.bandwidth+1
 	f.normal = resize(f.normal, n*stride)
 	f.gradient = resize(f.gradient, n)
 	f.widthColumn = resize(f.widthColumn, n)
 	f.slopes = resize(f.slopes, n)
-	clear(f.normal)
+	if normal {
+		clear(f.normal)
+	}
 	clear(f.gradient)
 	clear(f.widthColumn)
 	clear(f.slopes)
@@ -134,7 +143,7 @@ func (f *fitter) accumulate(robust bool) {
 			}
 		}
 		ub := &f.underBasis[p.nearest]
-		u0, u1 := f.underIdx[ub.first], f.underIdx[ub.first+1]
+		u0, u1 := ub.index[0], ub.index[1]
 		slopes[u0], slopes[u1] = ub.w[0], ub.w[1]
 		under := ub.w[0]*f.parameters[u0] + ub.w[1]*f.parameters[u1]
 		residual := p.value - under - model
@@ -159,6 +168,9 @@ func (f *fitter) accumulate(robust bool) {
 			v *= weight
 			f.gradient[a] += v * residual
 			f.widthColumn[a] += v * widthSlope
+			if !normal {
+				continue
+			}
 			right := slopes[a:min(hi+1, a+stride)]
 			row := f.normal[a*stride:][:len(right)]
 			for b, w := range right {
@@ -175,21 +187,18 @@ func (f *fitter) tabulate() {
 	f.span = 2*int(math.Ceil(reach*f.width*1.2)) + 2
 	need := len(f.now) * f.span
 	f.alongX, f.alongY = resize(f.alongX, need), resize(f.alongY, need)
-	f.corner = resize(f.corner, len(f.now))
+	f.drawn = resize(f.drawn, len(f.now))
 	norm := (f.at[1] - f.at[0]) / (2 * math.Pi)
 	half := float64(f.span)/2 - 1
 	for j, c := range f.now {
-		x0, y0 := math.Floor(c.x)-half, math.Floor(c.y)-half
-		f.corner[j] = [2]float64{x0, y0}
 		s2 := f.variance[j]
-		share := norm / s2 * f.weight[j]
-		ex, ey := f.alongX[j*f.span:(j+1)*f.span], f.alongY[j*f.span:(j+1)*f.span]
-		if share == 0 {
-			clear(ex)
-			continue
+		n := drawn{x: c.x, y: c.y, nx: f.normals[j].x, ny: f.normals[j].y, light: f.lightNow[j], inverse: 1 / s2,
+			x0: math.Floor(c.x) - half, y0: math.Floor(c.y) - half, dark: f.weight[j] == 0}
+		f.drawn[j] = n
+		if !n.dark {
+			gaussians(f.alongX[j*f.span:(j+1)*f.span], n.x0-c.x, s2, norm/s2*f.weight[j])
+			gaussians(f.alongY[j*f.span:(j+1)*f.span], n.y0-c.y, s2, 1)
 		}
-		gaussians(ex, x0-c.x, s2, share)
-		gaussians(ey, y0-c.y, s2, 1)
 	}
 }
 
@@ -205,36 +214,48 @@ func gaussians(out []float64, from, s2, scale float64) {
 	}
 }
 
+// drawn is a node as the pixels see it.
+type drawn struct {
+	x, y, nx, ny float64
+	light        float64
+	inverse      float64 // 1 / variance of the profile
+	x0, y0       float64 // the first pixel of its tables
+	dark         bool    // beyond an end
+}
+
 // pixelSlopes adds up what the nodes within reach of p send there, and leaves the derivatives with
-// respect to shape and light in slopes.
+// respect to shape, light and smear in slopes.
 func (f *fitter) pixelSlopes(p *pixel) (model, widthSlope float64) {
-	slopes := f.slopes
+	slopes, span := f.slopes, f.span
 	for j := int(p.first); j <= int(p.last); j++ {
-		c := &f.corner[j]
-		ix, iy := int(p.x-c[0]), int(p.y-c[1])
-		if uint(ix) >= uint(f.span) || uint(iy) >= uint(f.span) || f.weight[j] == 0 {
+		n := &f.drawn[j]
+		if n.dark {
 			continue
 		}
-		g := f.alongX[j*f.span+ix] * f.alongY[j*f.span+iy]
+		ix, iy := int(p.x-n.x0), int(p.y-n.y0)
+		if uint(ix) >= uint(span) || uint(iy) >= uint(span) {
+			continue
+		}
+		g := f.alongX[j*span+ix] * f.alongY[j*span+iy]
 		lb := &f.lightBasis[j]
-		for k, w := range lb.w {
-			slopes[f.lightIdx[lb.first+k]] += g * w
-		}
-		g *= f.lightNow[j]
-		dx, dy := p.x-f.now[j].x, p.y-f.now[j].y
+		slopes[lb.index[0]] += g * lb.w[0]
+		slopes[lb.index[1]] += g * lb.w[1]
+		g *= n.light
 		model += g
-		s2 := 1 / f.variance[j]
-		wider := g * ((dx*dx+dy*dy)*s2 - 2) * s2
+		dx, dy := p.x-n.x, p.y-n.y
+		g *= n.inverse
+		wider := g * ((dx*dx+dy*dy)*n.inverse - 2)
 		widthSlope += wider
+		wider /= 2
 		mb := &f.smearBasis[j]
-		for k, w := range mb.w {
-			slopes[f.smearIdx[mb.first+k]] += wider / 2 * w
-		}
-		t := g * (dx*f.normals[j].x + dy*f.normals[j].y) * s2
+		slopes[mb.index[0]] += wider * mb.w[0]
+		slopes[mb.index[1]] += wider * mb.w[1]
+		t := g * (dx*n.nx + dy*n.ny)
 		sb := &f.shapeBasis[j]
-		for k, w := range sb.w {
-			slopes[f.shapeIdx[sb.first+k]] += t * w
-		}
+		slopes[sb.index[0]] += t * sb.w[0]
+		slopes[sb.index[1]] += t * sb.w[1]
+		slopes[sb.index[2]] += t * sb.w[2]
+		slopes[sb.index[3]] += t * sb.w[3]
 	}
 	return model, widthSlope * f.width
 }

@@ -8,35 +8,44 @@ import (
 	"gonum.org/v1/gonum/lapack/lapack64"
 )
 
-// iterate runs damped Gauss-Newton steps until nothing moves, and returns the largest
-// displacement from the path.
+// iterate runs damped Gauss-Newton steps until nothing moves, and returns the largest displacement
+// from the path. The first pass starts far away: it sees half of the pixels and makes the normal
+// equations anew at every other step. The later ones start close and keep them for four steps; their
+// factor is what the errors are read off.
 func (f *fitter) iterate(pass int) (moved float64, err error) {
 	const steps = 12
 	// The first pass only has to bring the path close enough for its normals to be right.
-	settled := 0.03 * f.width
+	settled, keep := 0.02*f.width, 4
 	if pass == 0 {
-		settled = 0.15 * f.width
+		settled, keep = 0.1*f.width, 2
 	}
 	f.place()
-	f.accumulate(pass > 0)
+	f.accumulate(pass > 0, true)
 	last := f.chi2
 	f.trial = resize(f.trial, f.size)
 	for step := 0; step < steps; step++ {
-		f.prior()
+		fresh := step%keep == 0
+		if fresh && step > 0 {
+			f.accumulate(true, true)
+		}
+		f.prior(fresh)
+		if fresh && !f.factor() {
+			return 0, errFit
+		}
 		delta := append(f.trial[:0], f.gradient[:f.size]...)
 		if !f.solve(delta) {
 			return 0, errFit
 		}
 		// No step may throw the line off its light.
-		move := f.largest(delta)
+		move, typical := f.displacement(delta)
 		scale := min(1, f.width/move)
-		before := append([]float64(nil), f.parameters...)
+		f.before = append(f.before[:0], f.parameters...)
 		for halving := 0; ; halving++ {
 			for i := range delta {
-				f.parameters[i] = before[i] + scale*delta[i]
+				f.parameters[i] = f.before[i] + scale*delta[i]
 			}
 			f.place()
-			f.accumulate(step >= 1 || pass > 0)
+			f.accumulate(step >= 1 || pass > 0, false)
 			if math.IsNaN(f.chi2) {
 				return 0, errFit
 			}
@@ -46,14 +55,15 @@ func (f *fitter) iterate(pass int) (moved float64, err error) {
 			scale /= 2
 		}
 		last = f.chi2
-		if scale*move < settled {
+		if scale*typical < settled {
 			break
 		}
 	}
 	if !(f.parameters[f.endsIdx[1]]-f.parameters[f.endsIdx[0]] > 3*f.width) {
 		return 0, errTooBig
 	}
-	return f.largest(f.parameters), nil
+	moved, _ = f.displacement(f.parameters)
+	return moved, nil
 }
 
 // secondDifference of three B-spline coefficients, over the squared knot distance, is the curvature at
@@ -61,11 +71,14 @@ func (f *fitter) iterate(pass int) (moved float64, err error) {
 var secondDifference = [3]float64{1, -2, 1}
 
 // prior adds information so weak that it only decides what the pixels leave open (a dark gap,
-// an end without light): shape within 3 widths, brightness within a quarter of its mean.
-func (f *fitter) prior() {
+// an end without light): shape within 3 widths, brightness within a quarter of its mean. It is added to
+// the gradient and, if normal says so, to the normal equations.
+func (f *fitter) prior(normal bool) {
 	bw := f.bandwidth
 	add := func(i int, sd, value float64) {
-		f.normal[i*(bw+1)] += 1 / (sd * sd)
+		if normal {
+			f.normal[i*(bw+1)] += 1 / (sd * sd)
+		}
 		f.gradient[i] -= value / (sd * sd)
 	}
 	mean := 0.0
@@ -99,7 +112,7 @@ func (f *fitter) prior() {
 			i := f.shapeIdx[c]
 			f.gradient[i] += weight * secondDifference[m] / (h * h) * (want - have)
 			for n, d := range three {
-				if j := f.shapeIdx[d]; j >= i {
+				if j := f.shapeIdx[d]; normal && j >= i {
 					f.normal[i*(bw+1)+j-i] += weight * secondDifference[m] * secondDifference[n] / sq(h*h)
 				}
 			}
@@ -107,26 +120,24 @@ func (f *fitter) prior() {
 	}
 	for k, i := range f.smearIdx {
 		sd := smearSD
-		if k < 2 || k >= len(f.smearIdx)-2 {
+		if k == 0 || k == len(f.smearIdx)-1 {
 			sd = endSmearSD
 		}
 		add(i, sd*sq(f.width), f.parameters[i])
 	}
 }
 
-// factor replaces the normal equations by their Cholesky factor.
-func (f *fitter) factor() (blas64.TriangularBand, bool) {
-	return lapack64.Pbtrf(blas64.SymmetricBand{Uplo: blas.Upper, N: f.size, K: f.bandwidth,
+// factor replaces the normal equations by their Cholesky factor, and tells whether there is one.
+func (f *fitter) factor() bool {
+	var ok bool
+	f.triangle, ok = lapack64.Pbtrf(blas64.SymmetricBand{Uplo: blas.Upper, N: f.size, K: f.bandwidth,
 		Stride: f.bandwidth + 1, Data: f.normal[:f.size*(f.bandwidth+1)]})
+	return ok
 }
 
-// solve solves the normal equations for right-hand side b, in place; they are factored in place.
+// solve solves the factored normal equations for the right-hand side b, in place.
 func (f *fitter) solve(b []float64) bool {
-	t, ok := f.factor()
-	if !ok {
-		return false
-	}
-	lapack64.Pbtrs(t, blas64.General{Rows: f.size, Cols: 1, Stride: 1, Data: b})
+	lapack64.Pbtrs(f.triangle, blas64.General{Rows: f.size, Cols: 1, Stride: 1, Data: b})
 	for _, v := range b {
 		if math.IsNaN(v) || math.IsInf(v, 0) {
 			return false
