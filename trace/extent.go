@@ -28,7 +28,7 @@ func extent(frame, background imaging.Frame, excluded func(pixel int) bool, path
 	best, sum := 0.0, 0.0
 	from, to, start := 0, count-1, 0
 	for i, v := range light {
-		sum += min(v, 3*half) - half
+		sum += min(v, 1.7*half) - half
 		if sum <= 0 {
 			sum, start = 0, i+1
 		}

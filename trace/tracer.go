@@ -88,16 +88,12 @@ func (t *Tracer) Frame(frame imaging.Frame, number int) ([]Contour, error) {
 // detect leaves the frame's background, ridge map and pixel owners behind, and returns candidates.
 func (t *Tracer) detect(frame imaging.Frame) ([]candidate, error) {
 	imaging.EstimateBackground(frame, backgroundBlockPx, &t.background)
-	noise := imaging.NoiseStd(frame, t.background)
-	if !(noise > 0) {
-		noise = math.Sqrt(1.0 / 12)
-	}
 	o, width := t.options, t.conditions.WidthPx
 	// A filter much wider than a pixel sees as much in fewer, larger pixels.
 	bin := max(1, int(ridgeWidths*width/leastRidgePx))
-	t.binned.average(frame, t.background, bin)
+	t.binned.average(frame, t.background, bin, t.conditions.Camera)
 	scale := width / float64(bin)
-	err := ridge.Compute(t.binned.Frame, ridge.Options{SigmaPx: ridgeWidths * scale, NoiseCounts: noise / float64(bin),
+	err := ridge.Compute(t.binned.Frame, ridge.Options{SigmaPx: ridgeWidths * scale, NoiseCounts: 1 / float64(bin),
 		Floor: ridgeFloor}, &t.ridges)
 	if err != nil {
 		return nil, err
