@@ -11,6 +11,8 @@ const (
 	firstGateUm = 1.5
 	// lastGateUm bounds how far a filament may have gone while it was lost.
 	lastGateUm = 3.0
+	// lookBack is over how many frames a filament's recent length and motion are judged.
+	lookBack = 50
 	// rivalRatio is how much farther away the second-best match must be for the best to count.
 	rivalRatio = 1.25
 )
@@ -23,11 +25,30 @@ type track struct {
 
 func (k *track) last() *Contour { return &k.contours[len(k.contours)-1] }
 
+// settled tells whether the track has been followed long enough to be taken for a filament.
+func (k *track) settled() bool { return len(k.contours) >= 5 }
+
+// whole is the last contour that shows the filament whole, as far as its length tells.
+func (k *track) whole() *Contour {
+	lengths := make([]float64, 0, lookBack)
+	first := max(0, len(k.contours)-lookBack)
+	for _, c := range k.contours[first:] {
+		lengths = append(lengths, c.LengthUm)
+	}
+	usual := median(lengths)
+	for i := len(k.contours) - 1; i >= first; i-- {
+		if c := &k.contours[i]; math.Abs(c.LengthUm-usual) < 0.15*usual {
+			return c
+		}
+	}
+	return k.last()
+}
+
 // gate is how far the track's filament may be found after gap frames, µm.
 func (k *track) gate(gap int) float64 {
 	g := firstGateUm
 	if len(k.steps) >= 8 {
-		g = max(0.4, 5*median(k.steps[max(0, len(k.steps)-50):]))
+		g = max(0.4, 5*median(k.steps[max(0, len(k.steps)-lookBack):]))
 	}
 	return min(g*math.Sqrt(float64(gap)), lastGateUm)
 }
@@ -76,13 +97,14 @@ type match struct {
 func link(tracks []*track, contours []Contour, frame int) []*track {
 	var matches []match
 	for a, k := range tracks {
-		gap := frame - k.last().Frame
+		before := k.whole()
+		gap := frame - before.Frame
 		gate := k.gate(gap)
 		for b := range contours {
 			c := &contours[b]
-			d := separation(k.last().Points, c.Points, 2*gate)
-			mismatch := math.Abs(c.LengthUm - k.last().LengthUm)
-			if gap > 3 && mismatch > 0.15*k.last().LengthUm {
+			d := separation(before.Points, c.Points, 2*gate)
+			mismatch := math.Abs(c.LengthUm - before.LengthUm)
+			if gap > 3 && mismatch > 0.15*before.LengthUm {
 				continue
 			}
 			if d <= gate {
@@ -90,7 +112,14 @@ func link(tracks []*track, contours []Contour, frame int) []*track {
 			}
 		}
 	}
-	sort.SliceStable(matches, func(i, j int) bool { return matches[i].cost < matches[j].cost })
+	// A filament that has been followed goes before a line that has just turned up: a broken piece.
+	sort.SliceStable(matches, func(i, j int) bool {
+		a, b := tracks[matches[i].track].settled(), tracks[matches[j].track].settled()
+		if a != b {
+			return a
+		}
+		return matches[i].cost < matches[j].cost
+	})
 	trackDone, contourDone := make([]bool, len(tracks)), make([]bool, len(contours))
 	for i, m := range matches {
 		if trackDone[m.track] || contourDone[m.contour] {
@@ -101,12 +130,12 @@ func link(tracks []*track, contours []Contour, frame int) []*track {
 		for _, rival := range matches[i+1:] {
 			free := rival.track == m.track && !contourDone[rival.contour] ||
 				rival.contour == m.contour && !trackDone[rival.track]
-			if free && c.Reason == "" && rival.cost < rivalRatio*m.cost {
+			if free && c.Reason == "" && tracks[rival.track].settled() && rival.cost < rivalRatio*m.cost {
 				c.Reason = ReasonAmbiguous
 			}
 		}
 		k := tracks[m.track]
-		if backwards(k.last().Points, c.Points) {
+		if backwards(k.whole().Points, c.Points) {
 			c = turned(c)
 		}
 		if frame-k.last().Frame == 1 {
