@@ -218,7 +218,7 @@ func (o *omeImage) addPlane(a map[string]string) error {
 	}{{"TheC", &p.c}, {"TheZ", &p.z}, {"TheT", &p.t}} {
 		v, err := number(a, f.name, 0)
 		if err != nil {
-			return fmt.Errorf("Plane %w", err)
+			return fmt.Errorf("in Plane: %w", err)
 		}
 		*f.dst = v
 	}

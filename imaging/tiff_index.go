@@ -12,7 +12,6 @@ type index struct {
 	skipped []int   // places in the chain, from 0, of thumbnails and masks
 	first   page    // the first plane's, with its own tables
 	shape   shape
-	warn    []string
 	broken  error // what ended the chain early, nil if it was whole
 }
 

@@ -59,7 +59,6 @@ type page struct {
 	bits          int
 	sampleFormat  int
 	samples       int
-	mixedSamples  bool
 	compression   int
 	photometric   int
 	fillOrder     int
