@@ -143,7 +143,7 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 	series := SeriesOf(f, timesS, s, optics.LineWidthUm)
 	o := modes.DefaultOptions()
 	o.ResolutionPSF = optics.ResolvedUm / optics.LineWidthUm
-	out := Filament{Filament: f, Series: series, Result: modes.Analyse(series, o),
+	out := Filament{Filament: f, Result: modes.Analyse(series, o),
 		FramesUsed: len(series.Curves)}
 	var lengths, snr, photons, background, width, errors []float64
 	ends := [2]map[trace.End]int{{}, {}}

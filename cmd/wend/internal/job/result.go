@@ -27,8 +27,6 @@ type Settings struct {
 // Filament is one filament with what its contours say.
 type Filament struct {
 	trace.Filament
-	// Series is what the analysis saw: the used frames only.
-	Series modes.Series
 	modes.Result
 	// LengthUm is the median over used frames and LengthSDUm the scatter.
 	LengthUm, LengthSDUm float64

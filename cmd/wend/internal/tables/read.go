@@ -15,7 +15,7 @@ import (
 // maxFrames bounds the frame numbers that a table may hold, so that a wrong one cannot ask for all memory.
 const maxFrames = 10_000_000
 
-// Read reads back what [Write] wrote into dir: everything but Picture, the analysis input (Series) and
+// Read reads back what [Write] wrote into dir: everything but Picture and
 // the fitted line of the tangent correlation, which is NaN. Writing the result again gives the same bytes.
 func Read(dir string) (*job.Result, error) {
 	f, err := os.Open(filepath.Join(dir, SummaryFile))
