@@ -30,6 +30,21 @@ func cases() []accuracyCase {
 		{"soft", func(o *movie.Options, i int) { o.LpUm = 1.5 + 0.5*float64(i%4); o.LengthUm = 6 + float64(i%3) }},
 		{"bent", func(o *movie.Options, _ int) { o.BendPerUm = 0.08 }},
 		{"short exposure", func(o *movie.Options, _ int) { o.DragPaS = 2.4e-3; o.ExposureS = 0.005 }},
+		{"small pixels", func(o *movie.Options, _ int) {
+			o.PixelUm, o.WidthPx, o.HeightPx, o.BackgroundPerPx = 0.065, 330, 300, 3
+		}},
+		{"large pixels", func(o *movie.Options, _ int) {
+			o.PixelUm, o.WidthPx, o.HeightPx, o.BackgroundPerPx = 0.16, 140, 120, 18
+		}},
+		{"low gain", func(o *movie.Options, _ int) { o.Gain, o.ReadNoiseE = 0.5, 1 }},
+		{"long filaments", func(o *movie.Options, i int) {
+			o.LengthUm, o.WidthPx, o.HeightPx, o.IntervalS = 20+float64(i%3), 320, 320, 2
+		}},
+		{"short filaments", func(o *movie.Options, i int) { o.LengthUm = 3.5 + 0.5*float64(i%3); o.DragPaS = 2.4e-3 }},
+		{"few frames", func(o *movie.Options, _ int) { o.Frames = 25 }},
+		{"long exposure", func(o *movie.Options, _ int) { o.ExposureS = 0.2 }},
+		{"fast frames", func(o *movie.Options, _ int) { o.IntervalS, o.ExposureS, o.Frames = 0.05, 0.02, 200 }},
+		{"bleaching", func(o *movie.Options, _ int) { o.PhotonsPerUm, o.BleachTo = 900, 0.33 }},
 		{"a dozen", func(o *movie.Options, _ int) {
 			o.WidthPx, o.HeightPx, o.Filaments, o.Frames = 512, 512, 12, 30
 			o.LengthUm, o.LengthSpread = 8, 0.4
