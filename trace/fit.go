@@ -24,6 +24,8 @@ const (
 	smearKnots = 6
 	// smearSD and endSmearSD are how much that variance is expected to vary, in squared line widths.
 	smearSD, endSmearSD = 0.4, 1.0
+	// endReach is how far an end may move in one pass, in line widths.
+	endReach = 2.5
 	// widest is the largest width of the profile, in line widths.
 	widest = 2.2
 	// endCurvatureSD is how far from straight a free end is taken to be, in radians per line width. It

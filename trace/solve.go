@@ -44,6 +44,9 @@ func (f *fitter) iterate(pass int) (moved float64, err error) {
 			for i := range delta {
 				f.parameters[i] = f.before[i] + scale*delta[i]
 			}
+			for k, i := range f.endsIdx { // there are nodes and pixels only so far beyond the path
+				f.parameters[i] = min(max(f.parameters[i], f.ends[k]-endReach*f.width), f.ends[k]+endReach*f.width)
+			}
 			f.place()
 			f.accumulate(step >= 1 || pass > 0, false)
 			if math.IsNaN(f.chi2) {
