@@ -15,6 +15,7 @@ type amplitudes struct {
 	curves       []Curve
 	chords       []chords
 	noiseUm3     []float64 // P of each frame
+	motionNoise  float64
 	psfUm        float64
 	k            []float64   // wavenumbers of all modes computed, 1/µm
 	b            [][]float64 // b[mode][frame], µm^3/2
@@ -28,7 +29,7 @@ const noiseFloorUm3 = 1e-8
 
 // measure takes the usable frames of s: a finite ascending time, a curve of three or more distinct points and a noise density.
 func measure(s Series, o Options) amplitudes {
-	a := amplitudes{temperatureK: s.TemperatureK, lengthUm: s.LengthUm, measuredUm: s.LengthUm, psfUm: math.Max(0, s.PSFUm)}
+	a := amplitudes{temperatureK: s.TemperatureK, lengthUm: s.LengthUm, measuredUm: s.LengthUm, psfUm: math.Max(0, s.PSFUm), motionNoise: math.Max(0, s.MotionNoise)}
 	a.frames.ExposureS = math.Max(0, s.ExposureS)
 	if !(s.LengthUm > 0) || math.IsInf(s.LengthUm, 0) || math.IsNaN(s.PSFUm) || math.IsInf(s.PSFUm, 0) {
 		return a
@@ -91,9 +92,15 @@ func (a amplitudes) noiseGain(mode int) float64 {
 	return math.Exp(x * x)
 }
 
+// noise returns the noise variance of beam mode m in a frame, µm³, the mean over frames.
+func (a amplitudes) noise(m int, t theory) float64 {
+	p := likelihood.ModeProcess(BeamWavenumber(m, a.lengthUm), t.lpUm, t.dragPaS, a.temperatureK)
+	return t.noiseScale*mean(a.noiseUm3)*a.noiseGain(m) + a.motionNoise*likelihood.Hidden(p, a.frames.ExposureS)
+}
+
 // data returns frames from (included) to to (excluded) for the likelihood.
 func (a amplitudes) data(from, to int) likelihood.Data {
-	d := likelihood.Data{TemperatureK: a.temperatureK}
+	d := likelihood.Data{TemperatureK: a.temperatureK, MotionNoise: a.motionNoise}
 	d.ExposureS, d.TimesS = a.frames.ExposureS, a.frames.TimesS[from:to]
 	for n := 1; n <= a.fitted; n++ {
 		t := likelihood.Track{WavenumberPerUm: a.k[n-1], Amplitude: a.b[n-1][from:to]}
@@ -124,7 +131,7 @@ func (a amplitudes) modeSpread(m int, t theory) (variance, ofMean, ofSquare floa
 	k := a.k[m-1]
 	n := float64(len(a.frames.TimesS))
 	mx := mixture{frames: a.frames, weight: []float64{1 / (t.lpUm * math.Pow(k, 4))}, relaxation: []float64{a.relaxation(k, t)},
-		noise: t.noiseScale * mean(a.noiseUm3) * a.noiseGain(m)}
+		noise: a.noise(m, t)}
 	signal, about := mx.signal()
 	variance = signal + mx.noise
 	return variance, signal - about + mx.noise/n, 2 * variance * variance / mx.varianceShapes()

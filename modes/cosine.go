@@ -38,7 +38,6 @@ func (r cosineRow) gainAt(lpUm, dragPaS, exposureS float64) float64 {
 // exposure and the subtracted mean, of which correlated frames leave less than independent ones.
 func cosineModes(a amplitudes, t theory, o Options) []cosineRow {
 	n := float64(len(a.frames.TimesS))
-	noiseUm3 := t.noiseScale * mean(a.noiseUm3)
 	var rows []cosineRow
 	last := a.fitted
 	if a.fitted == a.resolved {
@@ -66,7 +65,7 @@ func cosineModes(a amplitudes, t theory, o Options) []cosineRow {
 			mix.relaxation = append(mix.relaxation, a.relaxation(k, t))
 			row.share = append(row.share, share)
 			row.slowness = append(row.slowness, a.relaxation(k, theory{lpUm: 1, dragPaS: 1}))
-			noise += w * w * noiseUm3 * a.noiseGain(m)
+			noise += w * w * a.noise(m, t)
 		}
 		mix.noise = noise * t.lpUm / row.free
 		visible, about := mix.signal()

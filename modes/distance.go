@@ -131,7 +131,6 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 // missingLength returns how much longer, µm, the contour is than the contours show: by the undulations that exposure and optics
 // hide, less what noise adds.
 func (a amplitudes) missingLength(t theory) float64 {
-	noiseUm3 := t.noiseScale * mean(a.noiseUm3)
 	sum := 0.0
 	count := max(a.held, theoryModes)
 	for m := 1; m <= count; m++ {
@@ -139,7 +138,7 @@ func (a amplitudes) missingLength(t theory) float64 {
 		shown, noise := 0.0, 0.0
 		if m <= a.held {
 			shown = chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, t))
-			noise = noiseUm3 * a.noiseGain(m)
+			noise = a.noise(m, t)
 		}
 		sum += slopeSquare(m) / (2 * a.lengthUm * a.lengthUm) * ((1-shown)/(t.lpUm*math.Pow(k, 4)) - noise)
 	}

@@ -14,6 +14,9 @@ type Series struct {
 	// NoiseUm3 is the noise density P of each frame's centreline, µm³: a beam mode of
 	// wavenumber q carries the error variance P·exp((q·PSFUm)²).
 	NoiseUm3 []float64
+	// MotionNoise is the share of the undulation that an exposure averages away which the curves show
+	// again as noise, because the line was smeared: a property of how they were traced. 0: none.
+	MotionNoise float64
 	// PSFUm is the standard deviation of the line's profile, µm.
 	PSFUm float64
 	// LengthUm is the contour length, one for all frames.

@@ -200,7 +200,7 @@ func fitTangent(a amplitudes, rows []tangentRow, t theory, o Options) tangentFit
 		}
 		seen -= 2 * g * (1 - shown) / math.Pow(k, 4)
 		if m < a.held {
-			noise += g * t.noiseScale * mean(a.noiseUm3) * a.noiseGain(m+1)
+			noise += g * a.noise(m+1, t)
 		}
 		if m < a.resolved {
 			variance += g * g * spread[m]

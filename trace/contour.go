@@ -44,6 +44,12 @@ type Contour struct {
 	NoiseUm3 float64
 }
 
+// MotionNoise is the share of the undulation that an exposure averages away which contours show again
+// as noise: a smeared line has no Gaussian profile, and its fit is not exactly its mean. Measured on
+// synthetic movies (8 background photons per pixel, drag 2.4 to 12 mPa·s, exposure 0.03 to 0.2 s, the
+// modes whose noise matters): 0.01 at 3000 photons per µm, 0.02 to 0.05 at 600, 0.06 at 300.
+const MotionNoise = 0.04
+
 // Used reports whether the contour may be used.
 func (c Contour) Used() bool { return len(c.Points) > 1 && c.Reason == "" }
 

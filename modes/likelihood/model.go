@@ -20,7 +20,10 @@ type Track struct {
 type Data struct {
 	Frames
 	TemperatureK float64
-	Tracks       []Track
+	// MotionNoise is the share of the variance that a mode loses to the exposure which a frame shows
+	// again as white noise; 0 where frames are exact means over the exposure.
+	MotionNoise float64
+	Tracks      []Track
 }
 
 // check reports what keeps d from being fitted.
@@ -97,8 +100,9 @@ func (m *model) track(i int, at vector) float64 {
 	if m.scratch == nil {
 		m.scratch = make([]float64, len(m.d.TimesS))
 	}
+	motion := m.d.MotionNoise * Hidden(p, m.d.ExposureS)
 	for j, r := range t.NoiseVariance {
-		m.scratch[j] = c * r
+		m.scratch[j] = c*r + motion
 	}
 	return filter(p, m.d.Frames, t.Amplitude, m.scratch).restricted()
 }

@@ -47,6 +47,11 @@ func Covariance(p Process, exposureS, lagS float64) float64 {
 	return p.Variance * math.Exp(-dead/p.RelaxationS) * x.averaged * x.averaged
 }
 
+// Hidden returns how much of the variance of p the mean over an exposure does not show.
+func Hidden(p Process, exposureS float64) float64 {
+	return p.Variance - Covariance(p, exposureS, 0)
+}
+
 // Frames is when and how long the camera looked: the start of every frame's exposure, s, ascending, and the
 // exposure of each, s, which may be 0 and should not exceed any difference of times.
 type Frames struct {
