@@ -2,6 +2,7 @@ package job
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 	"runtime"
@@ -20,6 +21,7 @@ type Movie struct {
 	stack    *imaging.Stack
 	path     string
 	hash     string
+	damage   error // what ends the readable frames early
 }
 
 // Open opens the stack at path and settles its calibration. Wrong use wraps ErrUsage; anything else is
@@ -37,7 +39,30 @@ func Open(path string, r Request) (*Movie, error) {
 		stack.Close()
 		return nil, err
 	}
-	return &Movie{Settings: s, stack: stack, path: path}, nil
+	m := &Movie{Settings: s, stack: stack, path: path, damage: stack.Damage()}
+	if r.ReadableFrames {
+		if err := m.keepReadable(); err != nil {
+			stack.Close()
+			return nil, err
+		}
+	}
+	return m, nil
+}
+
+// keepReadable ends the movie before the first frame that cannot be decoded. The error is that of the
+// very first frame.
+func (m *Movie) keepReadable() error {
+	var frame imaging.Frame
+	src := channel{m.stack, m.Settings.Channel - 1}
+	for t := m.Settings.FirstFrame; t <= m.Settings.LastFrame; t++ {
+		if err := src.ReadFrame(t, &frame); err != nil {
+			if t == m.Settings.FirstFrame {
+				return err
+			}
+			m.damage, m.Settings.LastFrame = err, t-1
+		}
+	}
+	return nil
 }
 
 // Close closes the stack.
@@ -79,6 +104,9 @@ func (m *Movie) Measure(ctx context.Context, workers int, progress func(done int
 	}
 	info := m.stack.Info()
 	r, err := Measure(ctx, channel{m.stack, m.Settings.Channel - 1}, info, m.Settings, workers, progress)
+	if errors.Is(err, imaging.ErrDamaged) {
+		return nil, fmt.Errorf("%w: --readable-frames measures the frames before it", err)
+	}
 	if err != nil {
 		return nil, fmt.Errorf("%s: %w", m.path, err)
 	}
@@ -86,8 +114,8 @@ func (m *Movie) Measure(ctx context.Context, workers int, progress func(done int
 	for _, w := range info.Warnings {
 		r.Warnings = append(r.Warnings, Warning{"file", w})
 	}
-	if damage := m.stack.Damage(); damage != nil {
-		r.Warnings = append(r.Warnings, Warning{"damaged", "Only the intact frames at the start of a damaged stack were measured: " + damage.Error()})
+	if m.damage != nil {
+		r.Warnings = append(r.Warnings, Warning{"damaged", "Only the intact frames at the start of a damaged stack were measured: " + m.damage.Error()})
 	}
 	return r, nil
 }
@@ -107,6 +135,7 @@ func Measure(ctx context.Context, src trace.Source, info imaging.Info, s Setting
 	width := conditions.WidthPx * s.PixelUm
 	r := &Result{Version: Version, RidgeImplementation: ridge.Implementation(), Settings: s, Info: info,
 		Camera: conditions.Camera, Optics: Optics{width, width * conditions.ResolvedWidths()}, TimesS: times(info, s)}
+	trace.QuantiseTimes(r.TimesS)
 	for i := range traced {
 		if err := ctx.Err(); err != nil {
 			return nil, err

@@ -21,6 +21,7 @@ type Summary struct {
 	Ridge    string          `json:"ridge_implementation"`
 	Settings SettingsSummary `json:"settings"`
 	Camera   CameraSummary   `json:"camera"`
+	Optics   OpticsSummary   `json:"optics"`
 	Counts   Counts          `json:"counts"`
 	Warnings []WarningEntry  `json:"warnings"`
 }
@@ -73,6 +74,13 @@ type CameraSummary struct {
 	OffsetCounts *float64 `json:"offset_counts"`
 	ReadVariance *float64 `json:"read_variance_counts2"`
 	Source       string   `json:"source"`
+}
+
+// OpticsSummary is what the movie resolves: the width of a line (standard deviation, pixel and motion
+// included) and the shortest wavelength that its contours carry.
+type OpticsSummary struct {
+	LineWidthUm *float64 `json:"line_width_um"`
+	ResolvedUm  *float64 `json:"resolved_um"`
 }
 
 // Counts says how much came out of the stack.
@@ -141,6 +149,7 @@ func Summarise(r *job.Result) Summary {
 			ReadableFrames: SettingValue[bool]{s.ReadableFrames, source("readable_frames")},
 		},
 		Camera: CameraSummary{pointer(r.Camera.GainCounts), pointer(r.Camera.OffsetCounts), pointer(r.Camera.ReadVariance), r.Camera.Source},
+		Optics: OpticsSummary{pointer(r.Optics.LineWidthUm), pointer(r.Optics.ResolvedUm)},
 		Counts: counts, Warnings: warnings,
 	}
 }
@@ -195,6 +204,7 @@ func (s *Summary) fill(r *job.Result) {
 			"gain": set.Gain.Source, "offset": set.Offset.Source, "readable_frames": set.ReadableFrames.Source}}
 	r.Camera = imaging.Camera{GainCounts: value(s.Camera.GainCounts), OffsetCounts: value(s.Camera.OffsetCounts),
 		ReadVariance: value(s.Camera.ReadVariance), Source: s.Camera.Source}
+	r.Optics = job.Optics{LineWidthUm: value(s.Optics.LineWidthUm), ResolvedUm: value(s.Optics.ResolvedUm)}
 	for _, w := range s.Warnings {
 		r.Warnings = append(r.Warnings, job.Warning(w))
 	}
