@@ -104,9 +104,11 @@ func (f *fitter) result(points []xy) (fitted, error) {
 	weight := 0.0
 	for j, w := range f.weight {
 		r.brightness += w * f.lightNow[j]
+		r.meanWidth += w * f.variance[j]
 		weight += w
 	}
 	r.brightness /= weight
+	r.meanWidth = math.Sqrt(r.meanWidth / weight)
 	for i := range f.pixels {
 		p := &f.pixels[i]
 		b := &f.underBasis[p.nearest]

@@ -251,6 +251,9 @@ func lit(m *ridge.Map, a, b xy) bool {
 	sum, count := 0.0, 0
 	for i := 1; i < n; i++ {
 		p := a.plus(b.minus(a).times(float64(i) / float64(n)))
+		if min(p.distance(a), p.distance(b)) < 2 { // the ends' own light
+			continue
+		}
 		x, y := int(math.Round(p.x)), int(math.Round(p.y))
 		best := float32(0)
 		for dy := -1; dy <= 1; dy++ {

@@ -52,6 +52,7 @@ type fitted struct {
 	background       float64 // counts per pixel, the mean beside the line
 	noise            float64 // noise density, pixel³
 	width            float64 // line width used for the fit, pixel included
+	meanWidth        float64 // of the profile with its smear, the root of the mean square along the line
 	widthStep        float64 // change of width that the pixels ask for
 	widthSE          float64
 	chi2PerPixel     float64

@@ -13,5 +13,6 @@ const (
 	ReasonMissing   Reason = "missing"   // not found in this frame
 	ReasonFit       Reason = "fit"       // the centreline fit did not converge
 	ReasonBranched  Reason = "branched"  // the ridge branches or closes on itself
+	ReasonWide      Reason = "wide"      // much wider than a single line
 	ReasonSaturated Reason = "saturated" // pixels at the camera's limit
 )

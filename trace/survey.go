@@ -74,11 +74,12 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 			return Conditions{}, err
 		}
 		samples = imaging.NoiseSamples{}
-		var widths []float64
+		var widths, misfits []float64
 		tracer.observe = func(f *fitter, r fitted) {
 			if r.length*o.PixelUm >= o.MinLengthUm && r.widthSE > 0 && r.widthSE < 0.3*f.width {
 				widths = append(widths, min(max(f.width+r.widthStep, f.width*0.6), f.width*1.6))
 			}
+			misfits = append(misfits, r.chi2PerPixel)
 			f.residuals(frames[0].Width, &samples)
 		}
 		for i := range frames {
@@ -87,6 +88,9 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 			}
 		}
 		lines = len(widths)
+		if round > 1 && len(misfits) > 0 { // the camera is known by now
+			c.Misfit = median(misfits)
+		}
 		if len(frames) > 3 && lines > 2*surveyLines { // a crowded field says as much in fewer frames
 			frames = spreadOut(frames, max(3, len(frames)*surveyLines/lines))
 		}

@@ -16,6 +16,8 @@ type Conditions struct {
 	// KnotWidths is the distance between the knots of the centreline, in line widths.
 	KnotWidths float64
 	Camera     imaging.Camera
+	// Misfit is the usual χ² per pixel of a fit: 1 for a line that is as the model says; 0 if unknown.
+	Misfit float64
 	// MaxCount is the largest value a pixel can have, +Inf if unknown.
 	MaxCount float64
 }
@@ -169,11 +171,23 @@ func (t *Tracer) contour(frame imaging.Frame, number int, c candidate, r fitted,
 	case out.Reason != "":
 	case t.owner.saturated(points, t.conditions) > 0.02:
 		out.Reason = ReasonSaturated
+	case r.chi2PerPixel > worstMisfit*max(t.conditions.Misfit, 1):
+		out.Reason = ReasonBranched
+	case r.meanWidth > widestLine*t.conditions.WidthPx:
+		out.Reason = ReasonWide
 	case out.SNR < faintestSNR || !(median(se) < r.width):
 		out.Reason = ReasonFaint
 	}
 	return out
 }
+
+// worstMisfit is how many times its usual value χ² per pixel may be before a line is taken for something else:
+// a branch or another line on top of it leaves light that one line cannot explain.
+const worstMisfit = 1.5
+
+// widestLine is how many times as wide as the movie's lines one may be before it is taken for two side by
+// side, or for one out of focus.
+const widestLine = 1.4
 
 // faintestSNR is the peak brightness over the background's noise in one pixel below which a
 // line is not measured: the pixels then no longer decide between the line and its neighbourhood.

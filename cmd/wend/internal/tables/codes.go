@@ -43,6 +43,7 @@ var codes = []Code{
 	{KindFrame, "missing", "The filament was not found in this frame, though before and after it: mostly it left the focus for a moment."},
 	{KindFrame, "fit", "The fit of the centreline did not converge; mostly the line is too dim, too short or too sharply bent there."},
 	{KindFrame, "branched", "The bright line branches or closes on itself, so that there is no single path along it; two filaments may lie on top of each other."},
+	{KindFrame, "wide", "The line is much wider than the others: two filaments lie side by side, or it is out of focus."},
 	{KindFrame, "saturated", "Pixels of the filament are at the camera's limit, which flattens the profile and shifts the centreline; lower the exposure or the gain."},
 
 	{KindMode, "noise", "The localisation noise is too large against this mode's thermal variance; more light brings more modes in."},
