@@ -30,7 +30,7 @@ const (
 	widest = 2.2
 	// endCurvatureSD is how far from straight a free end is taken to be, in radians per line width. It
 	// carries no bending moment: no bending mode that is resolved has a curvature there.
-	endCurvatureSD = 0.03
+	endCurvatureSD = 0.06
 	// reach is how far from the line pixels are used and how far a Gaussian is drawn, in line widths.
 	reach = 3.6
 )

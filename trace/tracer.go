@@ -187,7 +187,7 @@ const worstMisfit = 1.5
 
 // widestLine is how many times as wide as the movie's lines one may be before it is taken for two side by
 // side, or for one out of focus.
-const widestLine = 1.4
+const widestLine = 1.7
 
 // faintestSNR is the peak brightness over the background's noise in one pixel below which a
 // line is not measured: the pixels then no longer decide between the line and its neighbourhood.
