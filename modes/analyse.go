@@ -60,6 +60,9 @@ func Analyse(s Series, o Options) Result {
 	}
 	r.dynamics(a, fit, bound)
 	r.classic(a, fit, t, s, o)
+	if len(s.Curves) >= minScatter && s.LengthSEUm > 0 && s.LengthSDUm > lengthScatter*s.LengthSEUm {
+		r.flag(FlagLength)
+	}
 	if a.bend() > 1 {
 		r.flag(FlagLargeBends)
 	}
@@ -69,6 +72,13 @@ func Analyse(s Series, o Options) Result {
 	r.judge(a, fit, t, bound, o)
 	return r
 }
+
+// A filament keeps its length: one whose measured length scatters by more than lengthScatter of its
+// standard errors, over minScatter frames or more, is traced wrongly in some of them.
+const (
+	lengthScatter = 2.0
+	minScatter    = 10
+)
 
 func (r *Result) flag(code string) {
 	for _, f := range r.Flags {

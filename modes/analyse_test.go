@@ -167,3 +167,16 @@ func BenchmarkAnalyse(b *testing.B) {
 		Analyse(s, DefaultOptions())
 	}
 }
+
+// A length that scatters by more than its errors says that contours are mis-traced: a flag, and no word that all is thermal.
+func TestAnalyseLengthScatter(t *testing.T) {
+	s := filament{lengthUm: 8, lpUm: 15, dragPaS: 4e-3, frames: 60, intervalS: 0.5, exposureS: 0.05, noiseUm3: 5e-5, seed: 5}.series(t)
+	s.LengthSDUm, s.LengthSEUm = 0.08, 0.07
+	if r := Analyse(s, DefaultOptions()); has(r, FlagLength) || r.Thermal != ThermalYes {
+		t.Errorf("a steady length: thermal %s, flags %v", r.Thermal, r.Flags)
+	}
+	s.LengthSDUm = 0.25
+	if r := Analyse(s, DefaultOptions()); !has(r, FlagLength) || r.Thermal != ThermalUnclear {
+		t.Errorf("a length that scatters: thermal %s, flags %v", r.Thermal, r.Flags)
+	}
+}

@@ -2,14 +2,15 @@ package modes
 
 // Flags of a [Result].
 const (
-	FlagLowerBound = "lower_bound" // only a lower bound of the persistence length
-	FlagFewShapes  = "few_shapes"  // few independent shapes, however many frames
-	FlagFewFrames  = "few_frames"  // too few usable frames for any estimate
-	FlagShort      = "short"       // no or hardly any bending mode is long enough to be resolved
-	FlagChanging   = "changing"    // the halves of the movie disagree
-	FlagDrag       = "drag"        // the drag is far from that of a filament in water
-	FlagDragLimit  = "drag_limit"  // an end of the interval rests on the range allowed for the drag
-	FlagEnds       = "ends"        // an end was not seen
+	FlagLowerBound = "lower_bound"    // only a lower bound of the persistence length
+	FlagFewShapes  = "few_shapes"     // few independent shapes, however many frames
+	FlagFewFrames  = "few_frames"     // too few usable frames for any estimate
+	FlagShort      = "short"          // no or hardly any bending mode is long enough to be resolved
+	FlagChanging   = "changing"       // the halves of the movie disagree
+	FlagDrag       = "drag"           // the drag is far from that of a filament in water
+	FlagDragLimit  = "drag_limit"     // an end of the interval rests on the range allowed for the drag
+	FlagEnds       = "ends"           // an end was not seen
+	FlagLength     = "length_scatter" // the length scatters more than its errors: contours are mis-traced in places
 	FlagNoBlur     = "no_blur_correction"
 	FlagNotThermal = "not_thermal"
 	FlagLargeBends = "large_bends" // bends of more than a radian: the small-angle dynamics hold less well

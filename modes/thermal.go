@@ -55,9 +55,10 @@ func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool
 	if !plausible || fit.DragPaS.Low > dragTooHigh*water {
 		r.flag(FlagDrag)
 	}
+	// With an end unseen, or contours that run on or break off, agreement with theory is an accident.
 	ends := false
 	for _, f := range r.Flags {
-		ends = ends || f == FlagEnds
+		ends = ends || f == FlagEnds || f == FlagLength
 	}
 	switch {
 	case bound || t.lpUnresolved || modes < 2:

@@ -226,7 +226,7 @@ func markLength(contours []Contour) {
 	}
 	m := median(lengths)
 	se := median(errs)
-	limit := max(5*min(max(spread(lengths), se), 2*se), 0.03*m)
+	limit := max(5*min(max(spread(lengths), se), 1.5*se), 0.03*m)
 	for i := range contours {
 		if c := &contours[i]; c.Reason == "" && math.Abs(c.LengthUm-m) > limit {
 			c.Reason = ReasonLength

@@ -88,7 +88,11 @@ func newPage(r *job.Result) *page {
 	p := &page{Name: r.Name, File: tables.BaseName(r.StackPath), Version: r.Version, SHA256: r.SHA256, Ridge: r.RidgeImplementation,
 		Overall: overall(r), Warnings: r.Warnings, Methods: methodsParagraph(r), Settings: settings(r), Confined: r.Settings.Setting == "network"}
 	c := r.Camera
-	p.Camera = fmt.Sprintf("%s counts per photoelectron, offset %s counts, read noise %s counts rms (%s)", digits(c.GainCounts, 3), digits(c.OffsetCounts, 4), digits(math.Sqrt(c.ReadVariance), 3), c.Source)
+	dark := fmt.Sprintf("no light at %s counts, where read noise counts as light", digits(c.OffsetCounts, 4))
+	if c.ReadVariance > 0 {
+		dark = fmt.Sprintf("offset %s counts, read noise %s counts rms", digits(c.OffsetCounts, 4), digits(math.Sqrt(c.ReadVariance), 3))
+	}
+	p.Camera = fmt.Sprintf("%s counts per photoelectron, %s (%s)", digits(c.GainCounts, 3), dark, c.Source)
 	few := len(r.Filaments) <= 3
 	drops := map[string]int{}
 	for i := range r.Filaments {

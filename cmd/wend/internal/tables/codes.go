@@ -69,6 +69,7 @@ var codes = []Code{
 	{KindFlag, "large_bends", "The filament bends so far that the small-angle dynamics no longer hold well; the equilibrium estimates do."},
 	{KindFlag, "drag", "The fitted drag is far from that of a filament in water; the frame interval, the exposure or the thermal assumption may be wrong."},
 	{KindFlag, "drag_limit", "An end of the interval rests on the range allowed for the drag, so that the interval may be too narrow on that side; a shorter frame interval lets the movie itself say what the drag is."},
+	{KindFlag, "length_scatter", "The measured length scatters more than the light explains: in some frames the trace runs on into a spot or noise, or breaks off. Look at the frames; the persistence length may be too small."},
 	{KindFlag, "fit", "A fit did not converge, and its estimate is left out."},
 
 	{KindMethod, "likelihood", "Exact likelihood of the bending modes over time, with exposure, noise, drag and intrinsic shape taken into account: the recommended estimate."},
