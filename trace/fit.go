@@ -32,7 +32,7 @@ const (
 	// carries no bending moment: no bending mode that is resolved has a curvature there.
 	endCurvatureSD = 0.06
 	// reach is how far from the line pixels are used and how far a Gaussian is drawn, in line widths.
-	reach = 3.6
+	reach = 3.2
 )
 
 var (
