@@ -66,8 +66,11 @@ func LookAt(path string, r Request) (*Look, error) {
 	if !math.IsNaN(r.MinLengthUm) {
 		o.MinLengthUm = r.MinLengthUm
 	}
-	l.Conditions, err = trace.Survey(src, first, last, o,
-		trace.CameraHint{GainCounts: r.Gain, OffsetCounts: r.Offset, MaxCount: l.Info.MaxCount})
+	counts, factor, err := inCounts(src, l.Info, first)
+	if err != nil {
+		return nil, err
+	}
+	l.Conditions, err = trace.Survey(counts, first, last, o, hintIn(factor, r.Gain, r.Offset, l.Info.MaxCount))
 	if err != nil {
 		return nil, err
 	}
@@ -76,7 +79,7 @@ func LookAt(path string, r Request) (*Look, error) {
 		return nil, err
 	}
 	var frame imaging.Frame
-	if err := src.ReadFrame(first, &frame); err != nil {
+	if err := counts.ReadFrame(first, &frame); err != nil {
 		return nil, err
 	}
 	contours, err := tracer.Frame(frame, first)
@@ -88,6 +91,7 @@ func LookAt(path string, r Request) (*Look, error) {
 		snr = append(snr, c.SNR)
 	}
 	l.Lines, l.LineSNR = len(contours), median(snr)
+	l.Conditions.Camera = cameraOut(l.Conditions.Camera, factor)
 	l.warn(r)
 	return l, nil
 }
@@ -196,7 +200,7 @@ func (l *Look) Print(w io.Writer) error {
 	}
 	c := l.Conditions.Camera
 	line("camera", "gain %.3g counts per photoelectron, zero-light level %.4g counts (%s)", c.GainCounts, c.OffsetCounts, c.Source)
-	line("noise", "%.3g counts in a background pixel", math.Sqrt(c.Variance(l.First)))
+	line("noise", "%.3g counts in a background pixel", math.Sqrt(max(c.ReadVariance+c.GainCounts*(l.First-c.OffsetCounts), 0)))
 	width := fmt.Sprintf("%.2f pixels", l.Conditions.WidthPx)
 	if !math.IsNaN(l.PixelUm) {
 		width += fmt.Sprintf(" or %.0f nm", 1000*l.PixelUm*l.Conditions.WidthPx)

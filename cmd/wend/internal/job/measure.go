@@ -126,15 +126,19 @@ func Measure(ctx context.Context, src trace.Source, info imaging.Info, s Setting
 	if workers <= 0 {
 		workers = runtime.GOMAXPROCS(0)
 	}
-	hint := trace.CameraHint{GainCounts: s.Gain, OffsetCounts: s.Offset, MaxCount: info.MaxCount}
-	conditions, traced, err := trace.Movie(ctx, src, s.FirstFrame, s.LastFrame,
+	counts, factor, err := inCounts(src, info, s.FirstFrame)
+	if err != nil {
+		return nil, err
+	}
+	hint := hintIn(factor, s.Gain, s.Offset, info.MaxCount)
+	conditions, traced, err := trace.Movie(ctx, counts, s.FirstFrame, s.LastFrame,
 		trace.Options{PixelUm: s.PixelUm, MinLengthUm: s.MinLengthUm}, hint, workers, progress)
 	if err != nil {
 		return nil, err
 	}
 	width := conditions.WidthPx * s.PixelUm
 	r := &Result{Version: Version, RidgeImplementation: ridge.Implementation(), Settings: s, Info: info,
-		Camera: conditions.Camera, Optics: Optics{width, width * conditions.ResolvedWidths()}, TimesS: times(info, s)}
+		Camera: cameraOut(conditions.Camera, factor), Optics: Optics{width, width * conditions.ResolvedWidths()}, TimesS: times(info, s)}
 	trace.QuantiseTimes(r.TimesS)
 	for i := range traced {
 		if err := ctx.Err(); err != nil {
