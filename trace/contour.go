@@ -21,8 +21,10 @@ const (
 // Contour is one filament in one frame. Points run from s = 0, about 0.1 µm apart. A contour
 // that was not found has no Points; one that must not be used has a Reason.
 type Contour struct {
-	Frame  int
+	Frame int
+	// Points may be nil where a whole movie was traced, to save memory: read them by [Contour.Line].
 	Points []Point
+	packed []packedPoint
 	// Reason says why the contour must not be used, empty where it may be.
 	Reason Reason
 	// LengthUm and its standard error.
@@ -51,7 +53,7 @@ type Contour struct {
 const MotionNoise = 0.04
 
 // Used reports whether the contour may be used.
-func (c Contour) Used() bool { return len(c.Points) > 1 && c.Reason == "" }
+func (c Contour) Used() bool { return c.Count() > 1 && c.Reason == "" }
 
 // Filament is one filament followed through the frames First to Last. Contours has an entry
 // for every one of these frames, in order, also where the filament was not found.

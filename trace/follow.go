@@ -96,13 +96,18 @@ type match struct {
 // link continues the tracks with the contours of one frame and begins new ones.
 func link(tracks []*track, contours []Contour, frame int) []*track {
 	var matches []match
+	lines := make([][]Point, len(contours))
+	for b := range contours {
+		lines[b] = contours[b].Line()
+	}
 	for a, k := range tracks {
 		before := k.whole()
+		beforeLine := before.Line()
 		gap := frame - before.Frame
 		gate := k.gate(gap)
 		for b := range contours {
 			c := &contours[b]
-			d := separation(before.Points, c.Points, 2*gate)
+			d := separation(beforeLine, lines[b], 2*gate)
 			mismatch := math.Abs(c.LengthUm - before.LengthUm)
 			if gap > 3 && mismatch > 0.15*before.LengthUm {
 				continue
@@ -135,7 +140,7 @@ func link(tracks []*track, contours []Contour, frame int) []*track {
 			}
 		}
 		k := tracks[m.track]
-		if backwards(k.whole().Points, c.Points) {
+		if backwards(k.whole().Line(), lines[m.contour]) {
 			c = turned(c)
 		}
 		if frame-k.last().Frame == 1 {
@@ -148,7 +153,7 @@ func link(tracks []*track, contours []Contour, frame int) []*track {
 			continue
 		}
 		c := contours[b]
-		p, q := c.Points[0], c.Points[len(c.Points)-1]
+		p, q := lines[b][0], lines[b][len(lines[b])-1]
 		if q.XUm < p.XUm || q.XUm == p.XUm && q.YUm < p.YUm {
 			c = turned(c)
 		}
@@ -200,15 +205,19 @@ func backwards(a, b []Point) bool {
 
 // turned returns c from its other end.
 func turned(c Contour) Contour {
-	points := slices.Clone(c.Points)
+	points := slices.Clone(c.Line())
+	end := points[len(points)-1].SUm
 	slices.Reverse(points)
-	end := c.Points[len(c.Points)-1].SUm
 	for i := range points {
 		points[i].SUm = end - points[i].SUm
 	}
-	c.Points = points
+	repack := c.packed != nil
+	c.Points, c.packed = points, nil
 	c.Ends[0], c.Ends[1] = c.Ends[1], c.Ends[0]
 	c.EndsSEUm[0], c.EndsSEUm[1] = c.EndsSEUm[1], c.EndsSEUm[0]
+	if repack {
+		c.pack()
+	}
 	return c
 }
 
@@ -256,7 +265,7 @@ func lost(before Contour, contours []Contour, frame int, gate float64) Contour {
 	c := Contour{Frame: frame, Reason: ReasonMissing, LengthUm: nan, LengthSEUm: nan, EndsSEUm: [2]float64{nan, nan},
 		PhotonsPerUm: nan, BackgroundPerUm2: nan, SNR: nan, WidthUm: nan, NoiseUm3: nan}
 	for _, other := range contours {
-		if other.Reason == ReasonCrossing && nearerThan(before.Points, other.Points, gate) {
+		if other.Reason == ReasonCrossing && nearerThan(before.Line(), other.Line(), gate) {
 			c.Reason = ReasonCrossing
 		}
 	}

@@ -35,6 +35,9 @@ func Movie(ctx context.Context, src Source, first, last int, o Options, hint Cam
 				err := src.ReadFrame(t, &frame)
 				if err == nil {
 					frames[t-first], err = tracer.Frame(frame, t)
+					for i := range frames[t-first] {
+						frames[t-first][i].pack()
+					}
 				}
 				if err != nil {
 					cancel(fmt.Errorf("trace: %w", err))

@@ -71,7 +71,7 @@ func QuantiseTimes(timesS []float64) {
 }
 
 func (c *Contour) quantise() {
-	if len(c.Points) == 0 {
+	if c.Count() == 0 {
 		if c.Reason == "" {
 			c.Reason = ReasonMissing
 		}
@@ -80,7 +80,7 @@ func (c *Contour) quantise() {
 			PhotonsPerUm: nan, BackgroundPerUm2: nan, SNR: nan, WidthUm: nan, NoiseUm3: nan}
 		return
 	}
-	if len(c.Points) == 1 && c.Reason == "" {
+	if c.Count() == 1 && c.Reason == "" {
 		c.Reason = ReasonFit
 	}
 	for i := range c.Points {

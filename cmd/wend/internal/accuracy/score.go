@@ -82,7 +82,7 @@ func (s *score) compare(r *job.Result, t truth) {
 				continue
 			}
 			line := t.contours[place{id, c.Frame}]
-			for _, p := range c.Points {
+			for _, p := range c.Line() {
 				squares += square(distance(point{p.XUm, p.YUm}, line))
 				points++
 			}
@@ -145,8 +145,9 @@ func nearestFilament(f *job.Filament, t truth) int {
 
 func meanDistance(c trace.Contour, line []point) float64 {
 	sum, n := 0.0, 0
-	for i := 0; i < len(c.Points); i += 5 {
-		sum += distance(point{c.Points[i].XUm, c.Points[i].YUm}, line)
+	points := c.Line()
+	for i := 0; i < len(points); i += 5 {
+		sum += distance(point{points[i].XUm, points[i].YUm}, line)
 		n++
 	}
 	return sum / float64(n)

@@ -182,7 +182,7 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 	ends := [2]map[trace.End]int{{}, {}}
 	for _, c := range f.Contours {
 		for k, e := range c.Ends {
-			if len(c.Points) > 0 {
+			if c.Count() > 0 {
 				ends[k][e]++
 			}
 		}
@@ -195,7 +195,7 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 		background = append(background, c.BackgroundPerUm2)
 		width = append(width, c.WidthUm)
 		var se []float64
-		for _, p := range c.Points {
+		for _, p := range c.Line() {
 			se = append(se, p.SEUm)
 		}
 		errors = append(errors, median(se))
@@ -224,9 +224,10 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, widthUm float64) m
 			continue
 		}
 		// modes corrects for what noise adds to a length and what blur hides of it.
-		lengths = append(lengths, c.Points[len(c.Points)-1].SUm)
-		curve := modes.Curve{XUm: make([]float64, len(c.Points)), YUm: make([]float64, len(c.Points))}
-		for i, p := range c.Points {
+		line := c.Line()
+		lengths = append(lengths, line[len(line)-1].SUm)
+		curve := modes.Curve{XUm: make([]float64, len(line)), YUm: make([]float64, len(line))}
+		for i, p := range line {
 			curve.XUm[i], curve.YUm[i] = p.XUm, p.YUm
 		}
 		out.Curves = append(out.Curves, curve)

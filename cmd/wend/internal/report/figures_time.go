@@ -26,7 +26,7 @@ func lengthFigure(r *job.Result, f *job.Filament) (svg template.HTML, note strin
 	low, high := math.Inf(1), math.Inf(-1)
 	for _, c := range f.Contours {
 		switch {
-		case !finite(c.LengthUm) || len(c.Points) == 0:
+		case !finite(c.LengthUm) || c.Count() == 0:
 			lost = append(lost, c)
 			continue
 		case c.Used():
@@ -94,7 +94,7 @@ func shapesFigure(f *job.Filament) (template.HTML, error) {
 	p.X.Tick.Marker, p.Y.Tick.Marker = steps{6}, steps{5}
 	widest, left, right := 0.0, math.Inf(1), math.Inf(-1)
 	for i, c := range used {
-		along, across := lay(c.Points)
+		along, across := lay(c.Line())
 		xys := points(false, false, len(along), func(k int) (float64, float64) { return along[k], across[k] })
 		xys = thin(xys, 60)
 		for _, q := range xys {

@@ -25,12 +25,12 @@ func overlay(r *job.Result) (o *imaging.Overlay, absent []int) {
 	for i, f := range r.Filaments {
 		found := false
 		for _, c := range f.Contours {
-			if c.Frame != r.PictureFrame || len(c.Points) == 0 {
+			if c.Frame != r.PictureFrame || c.Count() == 0 {
 				continue
 			}
 			found = true
 			line := imaging.OverlayLine{Label: strconv.Itoa(f.ID), Colour: i, Dashed: !c.Used()}
-			for _, p := range c.Points {
+			for _, p := range c.Line() {
 				line.XUm, line.YUm = append(line.XUm, p.XUm), append(line.YUm, p.YUm)
 			}
 			lines = append(lines, line)

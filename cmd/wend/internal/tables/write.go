@@ -98,7 +98,7 @@ func writeContours(out *rowWriter, r *job.Result) {
 		id := strconv.Itoa(f.ID)
 		for _, c := range f.Contours {
 			frame := strconv.Itoa(c.Frame)
-			for k, p := range c.Points {
+			for k, p := range c.Line() {
 				out.write(id, frame, strconv.Itoa(k), fixed(trace.RoundDecimals(p.SUm, trace.DecimalsArcUm), trace.DecimalsArcUm),
 					fixed(trace.RoundDecimals(p.XUm, trace.DecimalsPositionUm), trace.DecimalsPositionUm),
 					fixed(trace.RoundDecimals(p.YUm, trace.DecimalsPositionUm), trace.DecimalsPositionUm),
@@ -145,30 +145,31 @@ func timeOf(r *job.Result, frame int) float64 {
 }
 
 func endToEnd(c trace.Contour) float64 {
-	if len(c.Points) < 2 {
+	if c.Count() < 2 {
 		return math.NaN()
 	}
-	a, b := c.Points[0], c.Points[len(c.Points)-1]
+	line := c.Line()
+	a, b := line[0], line[len(line)-1]
 	return math.Hypot(b.XUm-a.XUm, b.YUm-a.YUm)
 }
 
 // centre returns the mean of the contour's points, µm.
 func centre(c trace.Contour) (x, y float64) {
-	for _, p := range c.Points {
+	for _, p := range c.Line() {
 		x += p.XUm
 		y += p.YUm
 	}
-	n := float64(len(c.Points))
+	n := float64(c.Count())
 	return x / n, y / n // NaN without points
 }
 
 func medianError(c trace.Contour) float64 {
-	n := len(c.Points)
+	n := c.Count()
 	if n == 0 {
 		return math.NaN()
 	}
 	se := make([]float64, n)
-	for i, p := range c.Points {
+	for i, p := range c.Line() {
 		se[i] = p.SEUm
 	}
 	slices.Sort(se)
