@@ -57,10 +57,10 @@ func (f frameRange) Type() string { return "FIRST-LAST" }
 
 // addCalibrationFlags adds the flags that say how a stack was taken.
 func addCalibrationFlags(f *pflag.FlagSet, r *job.Request) {
-	f.Var(number{&r.PixelUm}, "pixel-um", "`µm` in the sample per pixel (default: from the file)")
+	f.Var(number{&r.PixelUm}, "pixel-um", "`size` of a pixel in the sample, µm (default: from the file)")
 	f.Var(number{&r.IntervalS}, "interval-s", "`seconds` from frame to frame (default: from the file)")
 	f.Var(number{&r.ExposureS}, "exposure-s", "`seconds` of exposure (default: from the file); 0: do not correct for blur")
-	f.Var(number{&r.TemperatureC}, "temperature-c", "sample temperature in `°C` (default: 22, assumed)")
+	f.Var(number{&r.TemperatureC}, "temperature-c", "`temperature` of the sample, °C (default: 22, assumed)")
 	f.IntVar(&r.Channel, "channel", 0, "`number` of the channel, from 1 (needed where the file has several)")
 	f.Var(frameRange{r}, "frames", "use only the frames `FIRST-LAST`, counted from 0, both included")
 	f.Var(number{&r.Gain}, "gain", "camera `counts` per photoelectron (default: measured from the stack)")

@@ -78,7 +78,7 @@ pictures and a report out. Lengths are µm, times s. For research, not for diagn
 		SilenceErrors: true,
 		SilenceUsage:  true,
 		Args: func(_ *cobra.Command, args []string) error {
-			if len(args) > 0 {
+			if len(args) > 0 && args[0] != "help" {
 				return errUse{fmt.Errorf("no command %q: see wend --help", args[0])}
 			}
 			return nil

@@ -54,7 +54,7 @@ harmonic tube along its own axis instead, and --wander-um is its sliding.`,
 	f.IntVar(&o.Frames, "frames", o.Frames, "`number` of frames")
 	f.IntVar(&o.WidthPx, "width-px", o.WidthPx, "width of a frame, `pixels`")
 	f.IntVar(&o.HeightPx, "height-px", o.HeightPx, "height of a frame, `pixels`")
-	f.Float64Var(&o.PixelUm, "pixel-um", o.PixelUm, "side of a pixel in the sample, `µm`")
+	f.Float64Var(&o.PixelUm, "pixel-um", o.PixelUm, "`side` of a pixel in the sample, µm")
 	f.Float64Var(&o.IntervalS, "interval-s", o.IntervalS, "`time` from frame to frame, s")
 	f.Float64Var(&o.ExposureS, "exposure-s", o.ExposureS, "exposure `time`, s; 0 for an instant")
 	f.Float64Var(&o.TemperatureC, "temperature-c", o.TemperatureC, "`temperature`, °C")
