@@ -64,7 +64,7 @@ var codes = []Code{
 	{KindFlag, "short", "The filament is short against the optical resolution, so that at most a mode or two can be measured; take longer filaments."},
 	{KindFlag, "border", "The filament touches the border of the image, so that an end is not seen and the theory of free ends does not hold; centre the filament."},
 	{KindFlag, "ends", "An end of the filament is not seen well, so that its length and the lowest modes are uncertain."},
-	{KindFlag, "not_thermal", "The fluctuations are unlike thermal ones (spectrum, distribution or time course), so that no persistence length is given; look for flow, drift, motors or sticking."},
+	{KindFlag, "not_thermal", "The fluctuations are unlike those of a free thermal filament (spectrum, distribution or time course), so that no persistence length is given; look for confinement, flow, drift, motors or sticking."},
 	{KindFlag, "no_blur_correction", "The exposure was not given or was set to 0, so that no correction for motion during the exposure was made and the persistence length may be too large."},
 	{KindFlag, "large_bends", "The filament bends so far that the small-angle dynamics no longer hold well; the equilibrium estimates do."},
 	{KindFlag, "drag", "The fitted drag is far from that of a filament in water; the frame interval, the exposure or the thermal assumption may be wrong."},
