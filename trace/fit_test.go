@@ -153,17 +153,6 @@ func waveError(r fitted, at func(t float64) xy, waves int) float64 {
 	return sum
 }
 
-func nearestOn(p xy, at func(t float64) xy) xy {
-	best, where := math.Inf(1), xy{}
-	for i := 0; i <= 8000; i++ {
-		q := at(float64(i) / 8000)
-		if d := p.distance(q); d < best {
-			best, where = d, q
-		}
-	}
-	return where
-}
-
 func rms(v []float64) float64 {
 	sum := 0.0
 	for _, x := range v {
