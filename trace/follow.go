@@ -11,6 +11,8 @@ const (
 	firstGateUm = 1.5
 	// lastGateUm bounds how far a filament may have gone while it was lost.
 	lastGateUm = 3.0
+	// pieceUm is how near to a filament a contour must lie to be a piece of it or to hold it, µm.
+	pieceUm = 0.6
 	// lookBack is over how many frames a filament's recent length and motion are judged.
 	lookBack = 50
 	// rivalRatio is how much farther away the second-best match must be for the best to count.
@@ -152,6 +154,12 @@ func link(tracks []*track, contours []Contour, frame int) []*track {
 		if contourDone[b] || contours[b].Reason == ReasonFit {
 			continue
 		}
+		if onFilament(tracks, lines[b], frame) {
+			if contours[b].Reason == "" {
+				contours[b].Reason = ReasonCrossing
+			}
+			continue
+		}
 		c := contours[b]
 		p, q := lines[b][0], lines[b][len(lines[b])-1]
 		if q.XUm < p.XUm || q.XUm == p.XUm && q.YUm < p.YUm {
@@ -173,20 +181,39 @@ func separation(a, b []Point, limit float64) float64 {
 	if loA.x > hiB.x+limit || loB.x > hiA.x+limit || loA.y > hiB.y+limit || loB.y > hiA.y+limit {
 		return math.Inf(1)
 	}
-	one := func(a, b []Point) float64 {
-		stepA, stepB := max(1, len(a)/20), max(1, len(b)/60)
-		sum, n := 0.0, 0
-		for i := 0; i < len(a); i += stepA {
-			best := math.Inf(1)
-			for j := 0; j < len(b); j += stepB {
-				best = min(best, sq(a[i].XUm-b[j].XUm)+sq(a[i].YUm-b[j].YUm))
-			}
-			sum += math.Sqrt(best)
-			n++
+	return (toward(a, b) + toward(b, a)) / 2
+}
+
+// toward is the mean distance of the points of a to the nearest of b, µm.
+func toward(a, b []Point) float64 {
+	stepA, stepB := max(1, len(a)/20), max(1, len(b)/60)
+	sum, n := 0.0, 0
+	for i := 0; i < len(a); i += stepA {
+		best := math.Inf(1)
+		for j := 0; j < len(b); j += stepB {
+			best = min(best, sq(a[i].XUm-b[j].XUm)+sq(a[i].YUm-b[j].YUm))
 		}
-		return sum / float64(n)
+		sum += math.Sqrt(best)
+		n++
 	}
-	return (one(a, b) + one(b, a)) / 2
+	return sum / float64(n)
+}
+
+// onFilament tells whether a contour lies on a filament that is being followed, or that one on it: then it is a
+// piece of it, or it joined to another, and no filament of its own.
+func onFilament(tracks []*track, line []Point, frame int) bool {
+	for _, k := range tracks {
+		before := k.whole()
+		if !k.settled() || frame-before.Frame > lookBack {
+			continue
+		}
+		other := before.Line()
+		near := min(max(pieceUm, k.gate(frame-before.Frame)), 2.5*pieceUm) // it may have moved since
+		if separation(line, other, 2*near) < math.Inf(1) && min(toward(line, other), toward(other, line)) < near {
+			return true
+		}
+	}
+	return false
 }
 
 // backwards tells whether b fits a better from its other end.

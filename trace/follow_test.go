@@ -256,3 +256,32 @@ func TestMovie(t *testing.T) {
 		t.Errorf("a broken frame: %v", err)
 	}
 }
+
+// Two filaments whose ends touch for a while look like one long one: it is no third filament, and neither of the two is used then.
+func TestFollowJoined(t *testing.T) {
+	var all [][]Contour
+	for f := range 60 {
+		y := 10 + 0.2*math.Sin(float64(f))
+		a, b := strand(f, 8, y, 7, 0, 0, false), strand(f, 15.6, y, 7, 0, 0, false)
+		if f >= 20 && f < 32 {
+			joined := strand(f, 11.8, y, 14.6, 0, 0, false)
+			all = append(all, []Contour{joined})
+			continue
+		}
+		all = append(all, []Contour{a, b})
+	}
+	got := Follow(all, 0, Options{})
+	if len(got) != 2 {
+		t.Fatalf("%d filaments, want 2", len(got))
+	}
+	for _, f := range got {
+		if len(f.Contours) != 60 {
+			t.Fatalf("filament %d: %d frames, want 60", f.ID, len(f.Contours))
+		}
+		for _, c := range f.Contours {
+			if joined := c.Frame >= 20 && c.Frame < 32; joined == c.Used() {
+				t.Errorf("filament %d frame %d: used is %v, reason %q", f.ID, c.Frame, c.Used(), c.Reason)
+			}
+		}
+	}
+}

@@ -72,6 +72,7 @@ func (s *score) compare(r *job.Result, t truth) {
 		id := nearestFilament(f, t)
 		if id < 0 || taken[id] {
 			s.falseOnes++
+			s.lines = append(s.lines, fmt.Sprintf("    %2d false: frames %d to %d, %d used, %.1f µm, on filament %d", f.ID, f.First, f.Last, f.FramesUsed, f.LengthUm, id+1))
 			continue
 		}
 		taken[id] = true
