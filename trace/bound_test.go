@@ -67,9 +67,9 @@ func TestErrorsAndBoundsFromDimToBright(t *testing.T) {
 			t.Errorf("%g photons per µm: noise density %.3g µm³, the bound is %.3g", lambda, median(density), bound)
 		}
 		// 32 lines of 18 and more coefficients: a ratio of rms values is known to 1/√(2·32·18) = 3 %. In dim light a
-		// fit is up to 12 % above what its normal equations say, as Mortensen et al. show of points; in bright
-		// light the knots' own error of up to 2 nm adds.
-		allowed := math.Hypot(1.12*rms(acrossSE), 2)
+		// fit is a few per cent above what its normal equations say, as Mortensen et al. show of points; in bright
+		// light the knots' own error of up to a nanometre adds.
+		allowed := math.Hypot(1.06*rms(acrossSE), 1)
 		if got := rms(across); !(got < 1.09*allowed && got > 0.88*rms(acrossSE)) {
 			t.Errorf("%g photons per µm: %.2f nm rms off, predicted %.2f", lambda, got, rms(acrossSE))
 		}

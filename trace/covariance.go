@@ -55,8 +55,12 @@ func (f *fitter) result(points []xy) (fitted, error) {
 	for k, i := range f.endsIdx {
 		x[i*columns+shapes+k] = 1
 	}
-	for i, v := range f.widthColumn[:f.size] {
-		x[i*columns+shapes+2] = v
+	// A wider line is one whose smear is larger everywhere, by 2·width per unit of width: pixels tell the two apart
+	// only as far as the smear's prior keeps it small. What is left of the width's information is therefore made
+	// of that prior; taking the pixels' share from their total would leave only its rounding.
+	wider := 2 * f.width
+	for k, i := range f.smearIdx {
+		x[i*columns+shapes+2] = wider / sq(f.smearPrior(k))
 	}
 	lapack64.Pbtrs(f.triangle, blas64.General{Rows: f.size, Cols: columns, Stride: columns, Data: x})
 	shapeCov := func(a, b int) float64 { return x[f.shapeIdx[a]*columns+b] }
@@ -91,10 +95,14 @@ func (f *fitter) result(points []xy) (fitted, error) {
 	}
 	r.lengthSE = math.Sqrt(max(endsVar[0]+endsVar[1]-2*endsCov, 0))
 
-	remaining, step := f.widthSum, f.widthGradient
-	for i := 0; i < f.size; i++ {
-		remaining -= f.widthColumn[i] * x[i*columns+shapes+2]
-		step -= x[i*columns+shapes+2] * f.gradient[i]
+	remaining, step := 0.0, 0.0
+	for k, i := range f.smearIdx {
+		held := wider / sq(f.smearPrior(k))
+		remaining += held * (wider - x[i*columns+shapes+2])
+		step += held * f.parameters[i]
+	}
+	for i, g := range f.gradient[:f.size] {
+		step += x[i*columns+shapes+2] * g
 	}
 	if remaining > 0 {
 		r.widthStep, r.widthSE = step/remaining, 1/math.Sqrt(remaining)

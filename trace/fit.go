@@ -95,9 +95,6 @@ type fitter struct {
 	parameters     []float64
 	normal         []float64 // upper band, row-major, bandwidth+1 wide
 	gradient       []float64
-	widthColumn    []float64
-	widthSum       float64
-	widthGradient  float64
 	chi2           float64
 	pixels         []pixel
 	nearest        []int32   // per image pixel, index into pixels + 1, for the current band
@@ -116,6 +113,9 @@ type fitter struct {
 func (f *fitter) fit(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy) (fitted, error) {
 	const passes = 3
 	path = extent(frame, background, excluded, path, f.width)
+	// The path begins as pixels, in steps that are shorter than the knots are apart: no displacement could take them
+	// out again. Its points are half a pixel apart; what is left are waves that the knots hold.
+	path = smooth(path, f.knots*f.width)
 	length := arcLengths(path)[len(path)-1]
 	ends := [2]float64{0, length}
 	var light, smear, under []float64

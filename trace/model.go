@@ -118,22 +118,20 @@ func (f *fitter) accumulate(robust, normal bool) {
 	n, stride := f.size, f.bandwidth+1
 	f.normal = resize(f.normal, n*stride)
 	f.gradient = resize(f.gradient, n)
-	f.widthColumn = resize(f.widthColumn, n)
 	f.slopes = resize(f.slopes, n)
 	if normal {
 		clear(f.normal)
 	}
 	clear(f.gradient)
-	clear(f.widthColumn)
 	clear(f.slopes)
-	f.widthSum, f.widthGradient, f.chi2 = 0, 0, 0
+	f.chi2 = 0
 	f.tabulate()
 	cut := sq(reach * f.width * 1.2)
 	slopes := f.slopes
 	for i := range f.pixels {
 		p := &f.pixels[i]
 		lo, hi := int(p.low), int(p.high)
-		model, widthSlope := f.pixelSlopes(p)
+		model := f.pixelSlopes(p)
 		for k, c := range f.endPoint {
 			// Moving an end adds or takes away a piece of line there.
 			if d2 := sq(p.x-c.x) + sq(p.y-c.y); d2 < cut {
@@ -157,8 +155,6 @@ func (f *fitter) accumulate(robust, normal bool) {
 		weight *= p.robust
 		p.model, p.residual = under+model, residual
 		f.chi2 += weight * residual * residual
-		f.widthSum += weight * widthSlope * widthSlope
-		f.widthGradient += weight * widthSlope * residual
 
 		for a := lo; a <= hi; a++ {
 			v := slopes[a]
@@ -167,7 +163,6 @@ func (f *fitter) accumulate(robust, normal bool) {
 			}
 			v *= weight
 			f.gradient[a] += v * residual
-			f.widthColumn[a] += v * widthSlope
 			if !normal {
 				continue
 			}
@@ -225,7 +220,7 @@ type drawn struct {
 
 // pixelSlopes adds up what the nodes within reach of p send there, and leaves the derivatives with
 // respect to shape, light and smear in slopes.
-func (f *fitter) pixelSlopes(p *pixel) (model, widthSlope float64) {
+func (f *fitter) pixelSlopes(p *pixel) (model float64) {
 	slopes, span := f.slopes, f.span
 	for j := int(p.first); j <= int(p.last); j++ {
 		n := &f.drawn[j]
@@ -245,7 +240,6 @@ func (f *fitter) pixelSlopes(p *pixel) (model, widthSlope float64) {
 		dx, dy := p.x-n.x, p.y-n.y
 		g *= n.inverse
 		wider := g * ((dx*dx+dy*dy)*n.inverse - 2)
-		widthSlope += wider
 		wider /= 2
 		mb := &f.smearBasis[j]
 		slopes[mb.index[0]] += wider * mb.w[0]
@@ -257,5 +251,5 @@ func (f *fitter) pixelSlopes(p *pixel) (model, widthSlope float64) {
 		slopes[sb.index[2]] += t * sb.w[2]
 		slopes[sb.index[3]] += t * sb.w[3]
 	}
-	return model, widthSlope * f.width
+	return model
 }

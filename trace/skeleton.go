@@ -1,7 +1,9 @@
 package trace
 
 // thin reduces each set of pixels in mask (row-major, width wide) to lines one pixel wide, by the
-// two-step removal of Zhang & Suen, Commun. ACM 27:236 (1984) (cited from memory). list holds the
+// two-step removal of Zhang & Suen, Commun. ACM 27:236 (1984), with the least count of three neighbours of
+// Lü & Wang, Commun. ACM 29:239 (1986) (both cited from memory): with two, a diagonal two pixels wide is
+// eaten up from its ends. list holds the
 // set pixels; the ones that stay are returned. Pixels on the image's border must not be set.
 func thin(mask []bool, width int, list []int) []int {
 	neighbours := [8]int{-width, -width + 1, 1, width + 1, width, width - 1, -1, -width - 1}
@@ -24,7 +26,7 @@ func thin(mask []bool, width int, list []int) []int {
 						rises++
 					}
 				}
-				if count < 2 || count > 6 || rises != 1 {
+				if count < 3 || count > 6 || rises != 1 {
 					continue
 				}
 				n, e, s, w := p[0], p[2], p[4], p[6]

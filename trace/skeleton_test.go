@@ -54,7 +54,7 @@ func (p picture) degree(i int) int {
 }
 
 func TestThinMakesOnePathOfABar(t *testing.T) {
-	for _, angle := range []float64{0, 0.3, 1.1, math.Pi / 2, 2.5} {
+	for _, angle := range []float64{0, 0.3, math.Pi / 4, 1.1, math.Pi / 2, 2.5} {
 		for _, radius := range []float64{0.8, 1.6, 3} {
 			p := newPicture(71, 63)
 			sin, cos := math.Sincos(angle)

@@ -122,12 +122,16 @@ func (f *fitter) prior(normal bool) {
 		}
 	}
 	for k, i := range f.smearIdx {
-		sd := smearSD
-		if k == 0 || k == len(f.smearIdx)-1 {
-			sd = endSmearSD
-		}
-		add(i, sd*sq(f.width), f.parameters[i])
+		add(i, f.smearPrior(k), f.parameters[i])
 	}
+}
+
+// smearPrior is the standard deviation that smear coefficient k is expected to have, pixels².
+func (f *fitter) smearPrior(k int) float64 {
+	if k == 0 || k == len(f.smearIdx)-1 {
+		return endSmearSD * sq(f.width)
+	}
+	return smearSD * sq(f.width)
 }
 
 // factor replaces the normal equations by their Cholesky factor, and tells whether there is one.
