@@ -335,24 +335,6 @@ func TestSavedContoursGiveTheSameTables(t *testing.T) {
 	}
 }
 
-// An interrupted run ends with 130 and leaves nothing half-written.
-func TestInterrupted(t *testing.T) {
-	t.Chdir(t.TempDir())
-	filamentMovie(t, "made", nil)
-	ctx, cancel := context.WithCancel(context.Background())
-	cancel()
-	var stdout, stderr bytes.Buffer
-	if status := run(ctx, []string{"measure", "made/synth.ome.tif", "--setting", "free"}, &stdout, &stderr); status != exitInterrupted {
-		t.Errorf("exit status %d, want 130", status)
-	}
-	if !strings.Contains(stderr.String(), "interrupted") {
-		t.Errorf("standard error: %q", stderr.String())
-	}
-	if files := bytesOf(t, "wend-out"); len(files) != 0 {
-		t.Errorf("files were left: %v", files)
-	}
-}
-
 // A stack without a filament is done: tables with their header, and a warning.
 func TestNoFilament(t *testing.T) {
 	t.Chdir(t.TempDir())
@@ -368,43 +350,6 @@ func TestNoFilament(t *testing.T) {
 	}
 	if _, err := os.Stat("wend-out/synth/report.html"); err != nil {
 		t.Error(err)
-	}
-}
-
-// A stack that was cut, and one with a page spoilt inside, fail with a hint; with --readable-frames their good
-// frames are measured, and the report says so.
-func TestDamagedStack(t *testing.T) {
-	t.Chdir(t.TempDir())
-	filamentMovie(t, "made", nil)
-	whole, err := os.ReadFile("made/synth.ome.tif")
-	if err != nil {
-		t.Fatal(err)
-	}
-	spoilt := bytes.Clone(whole)
-	for i := len(whole) * 3 / 4; i < len(whole)*3/4+400; i++ {
-		spoilt[i] ^= 0x5a
-	}
-	for name, content := range map[string][]byte{"cut.ome.tif": whole[:len(whole)*3/4], "spoilt.ome.tif": spoilt} {
-		if err := os.WriteFile(name, content, 0o644); err != nil {
-			t.Fatal(err)
-		}
-		_, stderr := must(t, exitSomeFailed, "measure", name, "--setting", "free")
-		for _, want := range []string{name, "page", "--readable-frames"} {
-			if !strings.Contains(stderr, want) {
-				t.Errorf("%s: %q does not say %q", name, stderr, want)
-			}
-		}
-		stdout, _ := must(t, exitDone, "measure", name, "--setting", "free", "--readable-frames", "--redo")
-		if !strings.Contains(stdout, "intact") {
-			t.Errorf("%s: the table does not say that frames are missing:\n%s", name, stdout)
-		}
-		rows := table(t, "wend-out/"+strings.TrimSuffix(name, ".ome.tif")+"/frames.csv")
-		if len(rows) < 10 || len(rows) > 20 {
-			t.Errorf("%s: %d frames measured, want the first three quarters of 24", name, len(rows))
-		}
-		if stdout, _ := must(t, exitDone, "measure", name, "--setting", "free", "--readable-frames"); !strings.Contains(stdout, "done before") {
-			t.Errorf("%s: finished, and done again:\n%s", name, stdout)
-		}
 	}
 }
 
@@ -474,6 +419,17 @@ func TestHelpAndVersion(t *testing.T) {
 		if !strings.Contains(stdout, "  "+want+" ") {
 			t.Errorf("help does not list %s:\n%s", want, stdout)
 		}
+	}
+}
+
+// wend help COMMAND is wend COMMAND --help.
+func TestHelpOfCommand(t *testing.T) {
+	want, _ := must(t, exitDone, "look", "--help")
+	if got, _ := must(t, exitDone, "help", "look"); got != want || !strings.Contains(got, "STACK…") {
+		t.Errorf("wend help look:\n%s\nwend look --help:\n%s", got, want)
+	}
+	if _, stderr := must(t, exitWrongUse, "help", "mesure"); !strings.Contains(stderr, `"mesure"`) {
+		t.Errorf("wend help mesure: %q", stderr)
 	}
 }
 

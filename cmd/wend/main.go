@@ -83,7 +83,17 @@ pictures and a report out. Lengths are µm, times s. For research, not for diagn
 			}
 			return nil
 		},
-		RunE: func(cmd *cobra.Command, _ []string) error { return cmd.Help() },
+		RunE: func(cmd *cobra.Command, args []string) error {
+			if len(args) > 1 { // wend help COMMAND
+				of, _, err := cmd.Find(args[1:])
+				if err != nil || of == cmd {
+					return errUse{fmt.Errorf("no command %q: see wend --help", args[1])}
+				}
+				of.InitDefaultHelpFlag()
+				return of.Help()
+			}
+			return cmd.Help()
+		},
 	}
 	root.SetVersionTemplate("wend {{.Version}}\n")
 	root.CompletionOptions.DisableDefaultCmd = true

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"io/fs"
 	"os"
 	"path/filepath"
 	"strings"
@@ -80,14 +81,10 @@ func measure(ctx context.Context, paths []string, request job.Request, o measure
 	}
 	failures := make(map[string]error)
 	for _, p := range paths {
-		movie, err := job.Open(p, request)
-		switch {
-		case errors.Is(err, job.ErrUsage):
+		if err := job.Check(p, request); errors.Is(err, job.ErrUsage) {
 			return err
-		case err != nil:
+		} else if err != nil {
 			failures[p] = err
-		default:
-			movie.Close()
 		}
 	}
 	if len(failures) < len(paths) {
@@ -153,6 +150,10 @@ func measureOne(ctx context.Context, path string, request job.Request, o measure
 		return err
 	}
 	result.Name = name
+	// A folder with a summary is whole: an older one goes before anything is replaced.
+	if err := os.Remove(filepath.Join(dir, tables.SummaryFile)); err != nil && !errors.Is(err, fs.ErrNotExist) {
+		return err
+	}
 	if err := report.Write(dir, result); err != nil {
 		return err
 	}

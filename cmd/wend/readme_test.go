@@ -66,7 +66,7 @@ func TestExamplesRun(t *testing.T) {
 	}
 	t.Chdir(t.TempDir())
 	o := movie.DefaultOptions()
-	o.Frames, o.WidthPx, o.HeightPx, o.LengthUm, o.WanderUm = 12, 110, 90, 6, 0.2
+	o.Frames, o.WidthPx, o.HeightPx, o.LengthUm, o.WanderUm = 6, 90, 76, 5, 0.2
 	m, err := movie.New(o)
 	if err != nil {
 		t.Fatal(err)

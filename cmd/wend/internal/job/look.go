@@ -56,8 +56,26 @@ func LookAt(path string, r Request) (*Look, error) {
 	if first >= l.Frames || last >= l.Frames {
 		return nil, usage("%s: --frames %d-%d, but the stack has the frames 0-%d", path, first, last, l.Frames-1)
 	}
+	var damage error
+	if r.ReadableFrames {
+		if last, damage, err = readableUntil(src, first, last); err != nil {
+			return nil, err
+		}
+	}
+	if err := l.examine(src, first, last, r); err != nil {
+		return nil, hinted(err)
+	}
+	l.warn(r)
+	if damage != nil {
+		l.Warnings = append(l.Warnings, fmt.Sprintf("the stack is damaged, and measure will end with frame %d: %v", last, damage))
+	}
+	return l, nil
+}
+
+// examine fills in what the frames first to last (both included) show.
+func (l *Look) examine(src trace.Source, first, last int, r Request) error {
 	if err := l.brightness(src, first, last); err != nil {
-		return nil, err
+		return err
 	}
 	o := trace.Options{PixelUm: l.PixelUm}
 	if math.IsNaN(o.PixelUm) {
@@ -68,23 +86,23 @@ func LookAt(path string, r Request) (*Look, error) {
 	}
 	counts, factor, err := inCounts(src, l.Info, first)
 	if err != nil {
-		return nil, err
+		return err
 	}
 	l.Conditions, err = trace.Survey(counts, first, last, o, hintIn(factor, r.Gain, r.Offset, l.Info.MaxCount))
 	if err != nil {
-		return nil, err
+		return err
 	}
 	tracer, err := trace.NewTracer(o, l.Conditions)
 	if err != nil {
-		return nil, err
+		return err
 	}
 	var frame imaging.Frame
 	if err := counts.ReadFrame(first, &frame); err != nil {
-		return nil, err
+		return err
 	}
 	contours, err := tracer.Frame(frame, first)
 	if err != nil {
-		return nil, err
+		return err
 	}
 	var snr []float64
 	for _, c := range contours {
@@ -92,8 +110,7 @@ func LookAt(path string, r Request) (*Look, error) {
 	}
 	l.Lines, l.LineSNR = len(contours), median(snr)
 	l.Conditions.Camera = cameraOut(l.Conditions.Camera, factor)
-	l.warn(r)
-	return l, nil
+	return nil
 }
 
 // brightness reads a dozen frames for their counts.

@@ -25,8 +25,35 @@ type Movie struct {
 }
 
 // Open opens the stack at path and settles its calibration. Wrong use wraps ErrUsage; anything else is
-// a bad stack. The caller closes the Movie.
+// a bad stack. With r.ReadableFrames every frame is decoded once, and the movie ends before the first that
+// cannot be. The caller closes the Movie.
 func Open(path string, r Request) (*Movie, error) {
+	m, err := open(path, r)
+	if err != nil || !r.ReadableFrames {
+		return m, err
+	}
+	last, damage, err := readableUntil(m.source(), m.Settings.FirstFrame, m.Settings.LastFrame)
+	if err != nil {
+		m.Close()
+		return nil, err
+	}
+	m.Settings.LastFrame = last
+	if damage != nil {
+		m.damage = damage
+	}
+	return m, nil
+}
+
+// Check finds what [Open] would refuse without decoding any frame; the error is Open's.
+func Check(path string, r Request) error {
+	m, err := open(path, r)
+	if err != nil {
+		return err
+	}
+	return m.Close()
+}
+
+func open(path string, r Request) (*Movie, error) {
 	if err := r.Check(); err != nil {
 		return nil, err
 	}
@@ -39,31 +66,11 @@ func Open(path string, r Request) (*Movie, error) {
 		stack.Close()
 		return nil, err
 	}
-	m := &Movie{Settings: s, stack: stack, path: path, damage: stack.Damage()}
-	if r.ReadableFrames {
-		if err := m.keepReadable(); err != nil {
-			stack.Close()
-			return nil, err
-		}
-	}
-	return m, nil
+	return &Movie{Settings: s, stack: stack, path: path, damage: stack.Damage()}, nil
 }
 
-// keepReadable ends the movie before the first frame that cannot be decoded. The error is that of the
-// very first frame.
-func (m *Movie) keepReadable() error {
-	var frame imaging.Frame
-	src := channel{m.stack, m.Settings.Channel - 1}
-	for t := m.Settings.FirstFrame; t <= m.Settings.LastFrame; t++ {
-		if err := src.ReadFrame(t, &frame); err != nil {
-			if t == m.Settings.FirstFrame {
-				return err
-			}
-			m.damage, m.Settings.LastFrame = err, t-1
-		}
-	}
-	return nil
-}
+// source is the channel that is measured.
+func (m *Movie) source() trace.Source { return channel{m.stack, m.Settings.Channel - 1} }
 
 // Close closes the stack.
 func (m *Movie) Close() error { return m.stack.Close() }
@@ -103,9 +110,9 @@ func (m *Movie) Measure(ctx context.Context, workers int, progress func(done int
 		return nil, err
 	}
 	info := m.stack.Info()
-	r, err := Measure(ctx, channel{m.stack, m.Settings.Channel - 1}, info, m.Settings, workers, progress)
+	r, err := Measure(ctx, m.source(), info, m.Settings, workers, progress)
 	if errors.Is(err, imaging.ErrDamaged) {
-		return nil, fmt.Errorf("%w: --readable-frames measures the frames before it", err)
+		return nil, hinted(err)
 	}
 	if err != nil {
 		return nil, fmt.Errorf("%s: %w", m.path, err)
