@@ -157,6 +157,56 @@ func flagsOf(c *cobra.Command) []string {
 	return out
 }
 
+// The Go that the README asks for is the one that go.mod needs.
+func TestReadmeGoVersion(t *testing.T) {
+	mod, err := os.ReadFile("../../go.mod")
+	if err != nil {
+		t.Fatal(err)
+	}
+	need := regexp.MustCompile(`(?m)^go (\d+\.\d+)`).FindSubmatch(mod)
+	if need == nil {
+		t.Fatal("go.mod has no go line")
+	}
+	if want := fmt.Sprintf("Go %s or later", need[1]); !strings.Contains(readme(t), want) {
+		t.Errorf("README does not say %q", want)
+	}
+}
+
+// The columns that the README explains stand in the filaments.csv that measure writes.
+func TestReadmeColumns(t *testing.T) {
+	_, section, ok := strings.Cut(readme(t), "The columns of `filaments.csv` to look at first:")
+	if !ok {
+		t.Fatal("README does not explain the columns of filaments.csv")
+	}
+	section, _, _ = strings.Cut(section, "Lengths are µm")
+	var named []string
+	for _, line := range strings.Split(section, "\n") {
+		if cells := strings.Split(line, "|"); len(cells) > 2 {
+			for _, m := range regexp.MustCompile("`([a-z_]+)`").FindAllStringSubmatch(cells[1], -1) {
+				named = append(named, m[1])
+			}
+		}
+	}
+	if len(named) < 10 {
+		t.Fatalf("README explains the columns %v, want more", named)
+	}
+	stack, err := filepath.Abs(demoStack)
+	if err != nil {
+		t.Fatal(err)
+	}
+	t.Chdir(t.TempDir())
+	must(t, exitDone, "measure", stack, "--setting", "free", "--frames", "0-7")
+	rows := table(t, "wend-out/demo/filaments.csv")
+	if len(rows) == 0 {
+		t.Fatal("no filament in the demo")
+	}
+	for _, name := range named {
+		if _, ok := rows[0][name]; !ok {
+			t.Errorf("README explains the column %s, which filaments.csv does not have", name)
+		}
+	}
+}
+
 // The codes in the README are those of the code, each with its sentence.
 func TestReadmeCodes(t *testing.T) {
 	const from, to = "-update renews it -->\n", "<!-- end of codes -->"
