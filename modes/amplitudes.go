@@ -94,7 +94,7 @@ func (a amplitudes) noiseGain(mode int) float64 {
 
 // noise returns the noise variance of beam mode m in a frame, µm³, the mean over frames.
 func (a amplitudes) noise(m int, t theory) float64 {
-	p := likelihood.ModeProcess(BeamWavenumber(m, a.lengthUm), t.lpUm, t.dragPaS, a.temperatureK)
+	p := a.process(BeamWavenumber(m, a.lengthUm), t)
 	return t.noiseScale*mean(a.noiseUm3)*a.noiseGain(m) + a.motionNoise*likelihood.Hidden(p, a.frames.ExposureS)
 }
 
@@ -117,21 +117,27 @@ func (a amplitudes) data(from, to int) likelihood.Data {
 // to count shapes.
 type theory struct {
 	lpUm, dragPaS, noiseScale float64
-	lpUnresolved              bool // lpUm is a stand-in: the data give only a bound
+	tubeRatio                 float64 // stiffness of a tube over that of the first mode
+	lpUnresolved              bool    // lpUm is a stand-in: the data give only a bound
+}
+
+// process is the thermal process of a mode of wavenumber k, 1/µm.
+func (a amplitudes) process(k float64, t theory) likelihood.Process {
+	first := BeamWavenumber(1, a.lengthUm)
+	return likelihood.ModeProcess(k, t.lpUm*(1+t.tubeRatio*math.Pow(first/k, 4)), t.dragPaS, a.temperatureK)
 }
 
 // relaxation returns the relaxation time of a wavenumber, s.
 func (a amplitudes) relaxation(k float64, t theory) float64 {
-	return likelihood.ModeProcess(k, t.lpUm, t.dragPaS, a.temperatureK).RelaxationS
+	return a.process(k, t).RelaxationS
 }
 
 // modeSpread returns, for beam mode m (from 1, up to those computed), the expected variance of a frame's amplitude, noise included, and the
 // variance of its time mean and of its mean square about the expectation.
 func (a amplitudes) modeSpread(m int, t theory) (variance, ofMean, ofSquare float64) {
-	k := a.k[m-1]
+	p := a.process(a.k[m-1], t)
 	n := float64(len(a.frames.TimesS))
-	mx := mixture{frames: a.frames, weight: []float64{1 / (t.lpUm * math.Pow(k, 4))}, relaxation: []float64{a.relaxation(k, t)},
-		noise: a.noise(m, t)}
+	mx := mixture{frames: a.frames, weight: []float64{p.Variance}, relaxation: []float64{p.RelaxationS}, noise: a.noise(m, t)}
 	signal, about := mx.signal()
 	variance = signal + mx.noise
 	return variance, signal - about + mx.noise/n, 2 * variance * variance / mx.varianceShapes()

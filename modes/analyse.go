@@ -32,13 +32,19 @@ func Analyse(s Series, o Options) Result {
 	if a.fitted < 3 {
 		r.flag(FlagShort)
 	}
-	fit, err := likelihood.Fit(a.data(0, len(a.frames.TimesS)), o.Likelihood)
+	data := a.data(0, len(a.frames.TimesS))
+	fit, err := likelihood.Fit(data, o.Likelihood)
 	if err != nil {
 		r.flag(FlagFit)
 		return r
 	}
-	t := theory{lpUm: fit.PeakLpUm, dragPaS: fit.DragPaS.Value, noiseScale: fit.NoiseScale}
-	bound := math.IsInf(fit.LpUm.High, 1)
+	bound := openAbove(&fit)
+	if !bound {
+		fit = r.confine(data, fit, o)
+		bound = openAbove(&fit)
+	}
+	a.motionNoise = fit.MotionNoise
+	t := theory{lpUm: fit.PeakLpUm, dragPaS: fit.DragPaS.Value, noiseScale: fit.NoiseScale, tubeRatio: fit.TubeRatio}
 	if bound {
 		// The shortest that the data allow has the slowest modes and so the fewest shapes.
 		t.lpUnresolved = true
@@ -63,8 +69,14 @@ func Analyse(s Series, o Options) Result {
 	if len(s.Curves) >= minScatter && s.LengthSEUm > 0 && s.LengthSDUm > lengthScatter*s.LengthSEUm {
 		r.flag(FlagLength)
 	}
-	if a.bend() > 1 {
+	if a.bend() > largeBend {
 		r.flag(FlagLargeBends)
+	}
+	if s.Processed {
+		r.flag(FlagProcessed)
+	}
+	if h := s.ChamberUm; h > 0 && ProjectionFactor(h, a.lengthUm) < leastProjection {
+		r.flag(FlagProjection)
 	}
 	if disagree(a, o) {
 		r.flag(FlagChanging)
@@ -79,6 +91,19 @@ const (
 	lengthScatter = 2.0
 	minScatter    = 10
 )
+
+// largeBend is the root mean square turn, rad, beyond which the small-angle dynamics hold less well.
+const largeBend = 0.6
+
+// openAbove says whether there is no upper limit, and takes away one that rests on the range allowed for the drag
+// in an interval too wide to be of use.
+func openAbove(fit *likelihood.Result) bool {
+	const useless = 10
+	if (fit.AtDragLimit || fit.PeakAtDragLimit) && !(fit.LpUm.High < useless*fit.LpUm.Low) {
+		fit.LpUm.Value, fit.LpUm.High = math.NaN(), math.Inf(1)
+	}
+	return math.IsInf(fit.LpUm.High, 1)
+}
 
 func (r *Result) flag(code string) {
 	for _, f := range r.Flags {
@@ -97,6 +122,9 @@ func (r *Result) add(quantity, method string, value, low, high float64, note str
 func (r *Result) recommend(fit likelihood.Result, bound bool) {
 	r.LpUm, r.LpLowUm, r.LpHighUm, r.LpFrom = fit.LpUm.Value, fit.LpUm.Low, fit.LpUm.High, FromLikelihood
 	note := fmt.Sprintf("all resolved bending modes together; drag fitted; noise %.2f times the predicted", fit.NoiseScale)
+	if fit.TubeRatio > 0 {
+		note += fmt.Sprintf("; with a tube %.2g times as stiff as the first mode", fit.TubeRatio)
+	}
 	if bound {
 		r.LpFrom = FromBound
 		note += "; no upper limit"
@@ -116,7 +144,7 @@ func (r *Result) dynamics(a amplitudes, fit likelihood.Result, bound bool) {
 	if bound {
 		drag.Value = math.NaN()
 	} else {
-		slowest = likelihood.ModeProcess(a.k[0], fit.PeakLpUm, fit.DragPaS.Value, a.temperatureK).RelaxationS
+		slowest = likelihood.ModeProcess(a.k[0], fit.PeakLpUm*(1+fit.TubeRatio), fit.DragPaS.Value, a.temperatureK).RelaxationS
 		w := math.Exp(1.959964 * fit.RatioSD)
 		low, high = slowest/w, slowest*w
 	}
@@ -178,6 +206,10 @@ func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series
 	if math.IsInf(distance.high, 1) {
 		distance.lpUm = math.NaN()
 	}
+	if t.tubeRatio > 0 {
+		r.classicConfined()
+		return
+	}
 	if t.lpUnresolved {
 		// Neither can be corrected for blur, nor its shapes counted, without a stiffness.
 		line.lpUm, line.low, line.high = math.NaN(), math.NaN(), math.NaN()
@@ -196,6 +228,28 @@ func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series
 	}
 	r.add(QuantityLp, MethodDistance, distance.lpUm, distance.low, distance.high, note)
 }
+
+// classicConfined takes away what the classic methods say of a filament in a tube: they are for free ones.
+func (r *Result) classicConfined() {
+	nan := math.NaN()
+	for i := range r.Estimates {
+		if e := &r.Estimates[i]; e.Method == MethodModes {
+			*e = Estimate{e.Quantity, e.Method, nan, nan, nan, forFree}
+		}
+	}
+	for i := range r.Modes {
+		m := &r.Modes[i]
+		m.LpUm, m.LpLowUm, m.LpHighUm, m.Used, m.Reason = nan, nan, nan, false, ReasonConfined
+	}
+	for i := range r.Tangent {
+		r.Tangent[i].Used = false
+	}
+	r.TangentFitLpUm, r.TangentFitIntercept = nan, nan
+	r.add(QuantityLp, MethodTangent, nan, nan, nan, forFree)
+	r.add(QuantityLp, MethodDistance, nan, nan, nan, forFree)
+}
+
+const forFree = "not given: the filament is confined, and this method is for free ones"
 
 // rescale lengthens the contour by what the contours do not show, and with it the fit: for lengths that grow by a factor a at unchanged times
 // the same amplitudes, as angles, mean a persistence length a times larger and a drag a³ times smaller. It alters a
@@ -222,6 +276,7 @@ func (a *amplitudes) rescale(fit *likelihood.Result, t theory) theory {
 	fit.PeakLpUm *= factor
 	for i := range fit.Tracks {
 		fit.Tracks[i].LpUm *= factor
+		fit.Tracks[i].HeldLpUm *= factor
 		fit.Tracks[i].DragPaS *= drag
 	}
 	return scaled

@@ -2,19 +2,25 @@ package modes
 
 // Flags of a [Result].
 const (
-	FlagLowerBound = "lower_bound"    // only a lower bound of the persistence length
-	FlagFewShapes  = "few_shapes"     // few independent shapes, however many frames
-	FlagFewFrames  = "few_frames"     // too few usable frames for any estimate
-	FlagShort      = "short"          // no or hardly any bending mode is long enough to be resolved
-	FlagChanging   = "changing"       // the halves of the movie disagree
-	FlagDrag       = "drag"           // the drag is far from that of a filament in water
-	FlagDragLimit  = "drag_limit"     // an end of the interval rests on the range allowed for the drag
-	FlagEnds       = "ends"           // an end was not seen
-	FlagLength     = "length_scatter" // the length scatters more than its errors: contours are mis-traced in places
-	FlagNoBlur     = "no_blur_correction"
-	FlagNotThermal = "not_thermal"
-	FlagLargeBends = "large_bends" // bends of more than a radian: the small-angle dynamics hold less well
-	FlagFit        = "fit"         // a fit failed
+	FlagLowerBound    = "lower_bound"    // only a lower bound of the persistence length
+	FlagFewShapes     = "few_shapes"     // few independent shapes, however many frames
+	FlagFewFrames     = "few_frames"     // too few usable frames for any estimate
+	FlagShort         = "short"          // no or hardly any bending mode is long enough to be resolved
+	FlagChanging      = "changing"       // the halves of the movie disagree
+	FlagDrag          = "drag"           // the drag is far from that of a filament in water
+	FlagDragLimit     = "drag_limit"     // an end of the interval rests on the range allowed for the drag
+	FlagEnds          = "ends"           // an end was not seen
+	FlagLength        = "length_scatter" // the length scatters more than its errors: contours are mis-traced in places
+	FlagNoBlur        = "no_blur_correction"
+	FlagNotThermal    = "not_thermal"
+	FlagLargeBends    = "large_bends"    // bends beyond which the small-angle dynamics hold less well
+	FlagFit           = "fit"            // a fit failed
+	FlagConfined      = "confined"       // a tube explains the modes better
+	FlagModesDisagree = "modes_disagree" // the modes do not tell one persistence length
+	FlagNoise         = "noise"          // the noise is far from the predicted
+	FlagPinned        = "pinned"         // a place along the filament stays where it is
+	FlagProcessed     = "processed"      // the images are not as the camera took them
+	FlagProjection    = "projection"     // the chamber is too deep for planar theory
 )
 
 // Reasons why a [Mode] is not used.
@@ -24,6 +30,7 @@ const (
 	ReasonResolution = "resolution"  // the wavelength is finer than the optics resolve
 	ReasonFewShapes  = "few_shapes"  // too few independent shapes
 	ReasonLowerBound = "lower_bound" // the variance does not exceed the noise
+	ReasonConfined   = "confined"    // a tube holds the mode back
 )
 
 // Values of Result.Thermal and Result.Confinement, and of Result.LpFrom.
@@ -32,6 +39,8 @@ const (
 	ThermalNo          = "no"
 	ThermalUnclear     = "unclear"
 	ConfinementFree    = "free"
+	ConfinementTube    = "tube"
+	ConfinementPinned  = "pinned"
 	ConfinementUnclear = "unclear"
 	FromLikelihood     = "likelihood"
 	FromBound          = "bound"

@@ -25,12 +25,11 @@ func widen(value, low, high float64, t theory, ratioSD float64, estimate func(th
 	const z = 1.959964
 	up, down := math.Pow(math.Log(high/value), 2), math.Pow(math.Log(low/value), 2)
 	ratioSD = math.Min(ratioSD, 3)
-	for _, change := range [][2]theory{
-		{{t.lpUm, t.dragPaS * math.Exp(-ratioSD), t.noiseScale, t.lpUnresolved}, {t.lpUm, t.dragPaS * math.Exp(ratioSD), t.noiseScale, t.lpUnresolved}},
-		{{t.lpUm, t.dragPaS, t.noiseScale * math.Exp(-noiseTrust), t.lpUnresolved}, {t.lpUm, t.dragPaS, t.noiseScale * math.Exp(noiseTrust), t.lpUnresolved}},
-	} {
+	for _, change := range [][2]float64{{ratioSD, 0}, {0, noiseTrust}} {
 		most, least := 0.0, 0.0
-		for _, c := range change {
+		for _, sign := range []float64{-1, 1} {
+			c := t
+			c.dragPaS, c.noiseScale = t.dragPaS*math.Exp(sign*change[0]), t.noiseScale*math.Exp(sign*change[1])
 			v := estimate(c)
 			if math.IsNaN(v) {
 				v = math.Inf(1)
@@ -73,7 +72,7 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 	}
 	r2 -= 2 * endVariance
 	length := func(lpUm float64) float64 {
-		return a.measuredUm + a.missingLength(theory{lpUm: lpUm, dragPaS: t.dragPaS, noiseScale: t.noiseScale})
+		return a.measuredUm + a.missingLength(theory{lpUm: lpUm, dragPaS: t.dragPaS, noiseScale: t.noiseScale, tubeRatio: t.tubeRatio})
 	}
 	missing := func(x float64) float64 { // falls with Lp where it crosses zero
 		lp := math.Exp(x)
@@ -140,7 +139,7 @@ func (a amplitudes) missingLength(t theory) float64 {
 			shown = chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, t))
 			noise = a.noise(m, t)
 		}
-		sum += slopeSquare(m) / (2 * a.lengthUm * a.lengthUm) * ((1-shown)/(t.lpUm*math.Pow(k, 4)) - noise)
+		sum += slopeSquare(m) / (2 * a.lengthUm * a.lengthUm) * ((1-shown)*a.process(k, t).Variance - noise)
 	}
 	// The finer modes, with ∫ψ′² → k² and k → (m+½)π/L.
 	return sum + a.lengthUm*a.lengthUm/(2*math.Pi*math.Pi*t.lpUm*float64(count+1))

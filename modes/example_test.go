@@ -9,14 +9,14 @@ import (
 	"wend/modes/chain"
 )
 
-// A filament of 8 µm with a persistence length of 10 µm, fifty contours of it half a second apart. (Invented data.)
+// A filament of 8 µm with a persistence length of 10 µm, two hundred contours of it half a second apart. (Invented data.)
 func ExampleAnalyse() {
 	c, err := chain.NewChain(chain.Options{LengthUm: 8, LpUm: 10, DragPaS: 4e-3, TempK: 295})
 	if err != nil {
 		fmt.Println(err)
 		return
 	}
-	track, err := c.NewTrack(chain.TrackOptions{Frames: 50, IntervalS: 0.5, ExposureS: 0,
+	track, err := c.NewTrack(chain.TrackOptions{Frames: 200, IntervalS: 0.5, ExposureS: 0,
 		Rand: func(frame int) *rand.Rand { return rand.New(rand.NewPCG(6, uint64(frame+1))) }})
 	if err != nil {
 		fmt.Println(err)

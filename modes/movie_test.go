@@ -15,6 +15,7 @@ type filament struct {
 	intervalS, exposureS    float64
 	noiseUm3                float64
 	curvaturePerUm          float64
+	tubeRmsUm               float64 // of a harmonic tube; 0: none
 	seed                    uint64
 }
 
@@ -24,8 +25,12 @@ const testPSFUm = 0.13
 // hold, P·exp((k·PSF)²) each, and in the two rigid ones. The contour length is the mean of what the contours show.
 func (f filament) series(t testing.TB) Series {
 	t.Helper()
-	c, err := chain.NewChain(chain.Options{LengthUm: f.lengthUm, LpUm: f.lpUm, DragPaS: f.dragPaS, TempK: 295.15,
-		CurvaturePerUm: f.curvaturePerUm, WanderUm: 1, TurnRad: 1, Modes: 32})
+	o := chain.Options{LengthUm: f.lengthUm, LpUm: f.lpUm, DragPaS: f.dragPaS, TempK: 295.15,
+		CurvaturePerUm: f.curvaturePerUm, WanderUm: 1, TurnRad: 1, Modes: 32}
+	if f.tubeRmsUm > 0 {
+		o.TubeStiffness = chain.TubeStiffness(f.tubeRmsUm, f.lpUm, o.TempK)
+	}
+	c, err := chain.NewChain(o)
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -28,6 +28,10 @@ type Series struct {
 	IntervalS, ExposureS float64
 	// TemperatureK is the sample's temperature, K.
 	TemperatureK float64
+	// ChamberUm is the depth of the chamber, µm; 0 where it is not known.
+	ChamberUm float64
+	// Processed says that the images were denoised, resampled or compressed with loss, so that NoiseUm3 is not to be trusted.
+	Processed bool
 	// FreeEnds says whether both ends were seen.
 	FreeEnds bool
 }

@@ -9,67 +9,131 @@ import (
 	"wend/modes/likelihood"
 )
 
-// Thresholds of the judgement. The first two are probabilities under the thermal theory.
+// Thresholds of the judgement. Those that start with p are probabilities under the thermal theory.
 const (
-	pChanging   = 1e-3 // halves of the movie disagree
-	pUnequal    = 1e-3 // modes disagree: not called thermal
-	pNotThermal = 1e-9 // modes disagree beyond doubt: called not thermal, if they also scatter by more than
-	notThermal  = 0.7  // this standard deviation of ln Lp between modes, a factor of two
-	dragTooLow  = 0.5  // times the drag in water, which the interval must reach to pass as an aqueous medium
-	dragTooHigh = 100  // times the drag in water, beyond which the drag is flagged
-	resolvedTo  = 0.5  // standard deviation of ln Lp up to which the fluctuation counts as resolved
-	minHalf     = 10   // frames in each half of the movie
+	pChanging    = 1e-3 // halves of the movie disagree
+	pDoubtful    = 0.01 // modes agree too little for a yes
+	pUnequal     = 1e-3 // modes disagree: flagged, and the interval is widened by as much
+	pNotThermal  = 1e-9 // modes disagree beyond doubt: called not thermal, if they also scatter by more than
+	notThermal   = 0.7  // this standard deviation of ln Lp between modes, a factor of two, or
+	notLocalDrag = 1.0  // this one of ln ζ: relaxation times that do not follow a drag
+	mostExcess   = 1.5  // variance over the thermal one that must be excluded in every mode for a yes
+	dragTooLow   = 0.5  // times the drag in water, which the interval must reach to pass as an aqueous medium
+	dragTooHigh  = 100  // times the drag in water, beyond which the drag is flagged
+	resolvedTo   = 0.5  // standard deviation of ln Lp up to which the fluctuation counts as resolved
+	tubeGain     = 7.7  // twice the log-likelihood gained by a tube, exceeded by three free filaments in a thousand
+	tubeDoubt    = 2.71 // the same, by one in twenty
+	freeTo       = 0.5  // tube's stiffness over the first mode's that must be excluded for a filament to be called free: a length of four deflection lengths
+	noiseFar     = 3    // standard deviations of the noise's prediction by which the fitted scale may differ from 1
+	minHalf      = 10   // frames in each half of the movie
 )
 
-// homogeneity tests whether all modes that tell a persistence length tell the same one. Each mode's drag is its own,
-// since drag depends a little on wavelength. It returns the probability of a worse agreement under the theory, the standard deviation of ln
-// Lp between the modes beyond their errors, and how many modes took part. One mode gives p = 1.
-func homogeneity(fit likelihood.Result) (p, scatter float64, modes int) {
-	const tells = 0.7 // standard deviation of a mode's ln Lp up to which it takes part
-	gain, sw, sx, sxx, errors := 0.0, 0.0, 0.0, 0.0, 0.0
-	for _, t := range fit.Tracks {
-		if !(t.LpSD < tells) {
-			continue
+// confine asks whether a tube explains the modes better. It flags a filament that is confined in a setting where it should be free, and returns
+// the fit to go on with: that of tube and stiffness together where there is one, and with the interval of both where it is in doubt.
+func (r *Result) confine(d likelihood.Data, free likelihood.Result, o Options) likelihood.Result {
+	tube, err := likelihood.Confinement(d, o.Likelihood, free)
+	if err != nil {
+		return free
+	}
+	if tube.Gain <= tubeDoubt {
+		if tube.Ratio.High < freeTo {
+			r.Confinement = ConfinementFree
 		}
-		modes++
-		gain += t.Gain
-		x := math.Log(t.LpUm / fit.PeakLpUm)
-		sw++
-		sx += x
-		sxx += x * x
-		errors += t.LpSD * t.LpSD
+		return free
 	}
-	if modes < 2 {
-		return 1, 0, modes
+	lo := o.Likelihood
+	lo.Confined = true
+	fit, err := likelihood.Fit(d, lo)
+	if err != nil {
+		return free
 	}
-	v := (sxx-sx*sx/sw)/(sw-1) - errors/sw
-	return distuv.ChiSquared{K: float64(modes - 1)}.Survival(gain), math.Sqrt(math.Max(0, v)), modes
+	if tube.Gain <= tubeGain {
+		// Free or not, the interval covers both.
+		free.LpUm.Low, free.LpUm.High = math.Min(free.LpUm.Low, fit.LpUm.Low), math.Max(free.LpUm.High, fit.LpUm.High)
+		return free
+	}
+	r.Confinement = ConfinementTube
+	r.flag(FlagConfined)
+	return fit
 }
 
-// judge fills Thermal and Confinement. "yes" needs a resolved fluctuation, modes that agree on one persistence length and a drag of
-// an aqueous medium or a more viscous one; "no" needs modes that disagree beyond doubt, and then takes the persistence length away.
+// judge fills Thermal and the flags behind it. "yes" is earned: modes that agree on one persistence length and one drag, well enough to
+// exclude an excess of half the thermal variance in any of them, a drag of an aqueous medium or a more viscous one, and no flag that speaks
+// against it. "no" needs modes that disagree beyond doubt, and takes the persistence length away, as does a stuck filament.
 func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool, o Options) {
-	p, scatter, modes := homogeneity(fit)
 	water := chain.DragUnbounded(chain.WaterViscosity(a.temperatureK), a.k[0], o.RadiusUm)
 	plausible := math.IsNaN(water) || fit.DragPaS.High >= dragTooLow*water
 	if !plausible || fit.DragPaS.Low > dragTooHigh*water {
 		r.flag(FlagDrag)
 	}
-	// With an end unseen, or contours that run on or break off, agreement with theory is an accident.
-	ends := false
-	for _, f := range r.Flags {
-		ends = ends || f == FlagEnds || f == FlagLength
+	if math.Abs(math.Log(fit.NoiseScale)) > noiseFar*o.Likelihood.NoiseScaleSD {
+		r.flag(FlagNoise)
 	}
-	switch {
-	case bound || t.lpUnresolved || modes < 2:
-	case p < pNotThermal && scatter > notThermal:
+	if bound || t.lpUnresolved {
+		return
+	}
+	if r.Shapes >= o.MinShapes {
+		if ratio, _ := a.pinnedAt(t); ratio < pinnedShare {
+			r.flag(FlagPinned)
+			r.Confinement = ConfinementPinned
+			r.withhold("the filament is stuck")
+			return
+		}
+	}
+	g := agree(fit)
+	if g.modes >= 2 && (g.p < pNotThermal && g.scatter > notThermal || g.dragP < pNotThermal && g.dragScatter > notLocalDrag) {
 		r.Thermal = ThermalNo
-		r.LpUm, r.LpLowUm, r.LpHighUm, r.LpFrom = math.NaN(), math.NaN(), math.NaN(), ""
 		r.flag(FlagNotThermal)
-	case p >= pUnequal && plausible:
-		r.Confinement = ConfinementFree
-		if !ends && fit.LpSD < resolvedTo {
-			r.Thermal = ThermalYes
+		r.withhold("the bending is not thermal")
+		return
+	}
+	if g.p < pUnequal {
+		r.flag(FlagModesDisagree)
+		r.widen(math.Sqrt(math.Max(1, g.gain/float64(g.modes-1))))
+	}
+	agreed := g.modes >= 3 && g.p >= pDoubtful && g.dragP >= pDoubtful && g.excess <= mostExcess
+	if agreed && plausible && fit.LpSD < resolvedTo && !r.doubted() {
+		r.Thermal = ThermalYes
+	}
+}
+
+// doubted says whether a flag stands that makes agreement with theory an accident.
+func (r *Result) doubted() bool {
+	for _, f := range r.Flags {
+		switch f {
+		case FlagEnds, FlagLength, FlagChanging, FlagNoise, FlagFewShapes, FlagDragLimit, FlagDrag, FlagProcessed:
+			return true
+		}
+	}
+	return false
+}
+
+// withhold takes away every persistence length and rigidity, for the reason given.
+func (r *Result) withhold(why string) {
+	nan := math.NaN()
+	r.LpUm, r.LpLowUm, r.LpHighUm, r.LpFrom = nan, nan, nan, ""
+	r.TangentFitLpUm, r.TangentFitIntercept = nan, nan
+	for i := range r.Estimates {
+		if e := &r.Estimates[i]; e.Quantity == QuantityLp || e.Quantity == QuantityRigidity {
+			e.Value, e.Low, e.High, e.Note = nan, nan, nan, "not given: "+why
+		}
+	}
+	for i := range r.Modes {
+		m := &r.Modes[i]
+		m.LpUm, m.LpLowUm, m.LpHighUm = nan, nan, nan
+	}
+}
+
+// widen stretches the interval of the recommended estimate about its value, in the logarithm, by a factor.
+func (r *Result) widen(factor float64) {
+	low, high := math.Pow(r.LpLowUm/r.LpUm, factor), math.Pow(r.LpHighUm/r.LpUm, factor)
+	r.LpLowUm, r.LpHighUm = r.LpUm*low, r.LpUm*high
+	for i := range r.Estimates {
+		if e := &r.Estimates[i]; e.Method == MethodLikelihood && (e.Quantity == QuantityLp || e.Quantity == QuantityRigidity) {
+			e.Low, e.High = e.Value*low, e.Value*high
+			if e.Quantity == QuantityLp {
+				e.Note += "; interval widened because the modes disagree"
+			}
 		}
 	}
 }

@@ -155,7 +155,7 @@ func TestMeasureAgainstTruth(t *testing.T) {
 	if p := number64(t, f["photons_per_um"]); !(math.Abs(p/1200-1) < 0.15) {
 		t.Errorf("%g photons per µm, want 1200", p)
 	}
-	if f["end_0"] != "free" || f["end_1"] != "free" || f["confinement"] != "free" || f["lp_from"] != "likelihood" {
+	if f["end_0"] != "free" || f["end_1"] != "free" || f["confinement"] == "tube" || f["confinement"] == "pinned" || f["lp_from"] != "likelihood" {
 		t.Errorf("ends %s %s, confinement %s, from %s", f["end_0"], f["end_1"], f["confinement"], f["lp_from"])
 	}
 	truth := make(map[string][][2]float64)

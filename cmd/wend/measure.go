@@ -54,7 +54,7 @@ there already, from the same file, settings and version, is not done again.`,
 	f.SortFlags = false
 	f.StringVar(&request.Setting, "setting", "", "`free`: filaments that fluctuate freely in a thin chamber (required)")
 	addCalibrationFlags(f, &request)
-	f.Var(number{&request.ChamberUm}, "chamber-um", "`depth` of the chamber, µm, for the record")
+	f.Var(number{&request.ChamberUm}, "chamber-um", "`depth` of the chamber, µm: filaments that it lets tilt out of the plane are flagged")
 	f.Var(number{&request.MinLengthUm}, "min-length-um", "`length` of the shortest filament wanted, µm (default: 2)")
 	f.StringVar(&o.out, "out", "wend-out", "`folder` for the results")
 	f.IntVar(&o.workers, "workers", 0, "`number` of frames traced at a time (default: one per core)")

@@ -15,12 +15,13 @@
 // relaxation time ζ/(kT·Lp·k⁴). A frame shows its mean over the exposure plus independent noise.
 // That makes a linear Gaussian state space, whose filter gives the exact likelihood for any exposure
 // and for missing frames; for the blurred variance see Wong and Halvorsen, Opt. Express 14:12517 (2006).
+// A harmonic tube of stiffness γ per length adds γ to κk⁴ and leaves the modes of a rod with free ends as they are.
 // The intrinsic shape is a constant of unknown value per mode and is taken out by
 // generalised least squares, so the likelihood is the restricted one (Patterson and Thompson,
 // Biometrika 58:545 (1971)) and the variance does not shrink by the mean that was subtracted.
 //
 // # Limits
 //
-// The exposure may not exceed the interval between frames. The filament is free: no tube.
+// The exposure may exceed the interval between frames by a clock's error only. A tube is harmonic and the same along the filament.
 // The drag is one number for all modes.
 package likelihood

@@ -11,6 +11,10 @@ type Options struct {
 	// NoiseScaleSD is the standard deviation of ln c, c being what the predicted noise variances are multiplied by:
 	// how well the prediction is known. Where the modes themselves tell c, the prior hardly matters.
 	NoiseScaleSD float64
+	// MotionNoiseSD is the same for the share of the hidden variance that a frame shows as noise, [Data.MotionNoise]; 0 takes it as exact.
+	MotionNoiseSD float64
+	// Confined fits the stiffness of a harmonic tube too.
+	Confined bool
 	// DragLowPaS and DragHighPaS bound the search for the drag per length, Pa·s.
 	DragLowPaS, DragHighPaS float64
 	// LpLowUm and LpHighUm bound the search for the persistence length, µm.
@@ -21,10 +25,10 @@ type Options struct {
 	LpOnly bool
 }
 
-// DefaultOptions: noise predicted to a factor 1.3; a drag from a quarter of what water at 40 °C lays on the
+// DefaultOptions: noise predicted to a factor 1.3 and that of motion to a factor 2; a free filament; a drag from a quarter of what water at 40 °C lays on the
 // thinnest rod to that of a paste; any persistence length; 95 % intervals.
 func DefaultOptions() Options {
-	return Options{NoiseScaleSD: math.Log(1.3), DragLowPaS: 3e-4, DragHighPaS: 30, LpLowUm: 1e-3, LpHighUm: 1e7, Confidence: 0.95}
+	return Options{NoiseScaleSD: math.Log(1.3), MotionNoiseSD: math.Log(2), DragLowPaS: 3e-4, DragHighPaS: 30, LpLowUm: 1e-3, LpHighUm: 1e7, Confidence: 0.95}
 }
 
 // Interval is an estimate with its interval, in the quantity's own unit. High may be +Inf and Low 0.
@@ -43,7 +47,11 @@ type Result struct {
 	DragPaS Interval
 	// NoiseScale is the fitted factor on the predicted noise variances, NoiseScaleSD the width of its logarithm.
 	NoiseScale, NoiseScaleSD float64
-	// LogLikelihood at the peak, the prior of the noise scale included.
+	// MotionNoise is the fitted share of the hidden variance that a frame shows as noise.
+	MotionNoise float64
+	// TubeRatio is γ/(κk₁⁴), the tube's stiffness over that of the first mode, at the peak; 0 for a free filament.
+	TubeRatio float64
+	// LogLikelihood at the peak, the priors included.
 	LogLikelihood float64
 	// LpSD is the standard deviation of ln Lp from the curvature at the peak, drag and noise scale unknown.
 	LpSD float64
@@ -54,38 +62,42 @@ type Result struct {
 	// LpProfile and DragProfile are in ln µm and ln Pa·s.
 	LpProfile, DragProfile Profile
 	// AtDragLimit says that an end of the interval of Lp stands where the drag met the end of its range: the data alone do
-	// not give that end.
-	AtDragLimit bool
+	// not give that end; PeakAtDragLimit that the peak stands there, where it means nothing.
+	AtDragLimit, PeakAtDragLimit bool
+
+	peak vector
 }
 
-// Fit finds persistence length, drag and noise scale that make all tracks most likely together, with
+// Fit finds persistence length, drag and noise that make all tracks most likely together, with
 // profile-likelihood intervals. d is left as it was. The error says which number is missing or not usable.
 func Fit(d Data, o Options) (Result, error) {
 	if err := d.check(); err != nil {
 		return Result{}, err
 	}
-	m := &model{d: d, priorVar: o.NoiseScaleSD * o.NoiseScaleSD}
-	b := bounds{
-		low:  vector{math.Log(o.LpLowUm), math.Log(o.DragLowPaS), -8 * o.NoiseScaleSD},
-		high: vector{math.Log(o.LpHighUm), math.Log(o.DragHighPaS), 8 * o.NoiseScaleSD},
+	m, b, free := newModel(d, o), o.bounds(), o.free(d)
+	best, top := search(m.value, free, b)
+	if free[paramTube] {
+		// A tube hides from the grid: its ridge runs along from the free filament.
+		best, top = intoTube(m, best, top, free, b)
 	}
-	best, top := search(m.value, b)
-	all := [params]bool{true, true, true}
-	_, h := slopes(m.value, best, top, all)
-	w := widths(h, all)
+	_, h := slopes(m.value, best, top, free)
+	w := widths(h, free)
 	r := Result{
 		PeakLpUm:      math.Exp(best[paramLp]),
 		NoiseScale:    math.Exp(best[paramNoise]),
 		NoiseScaleSD:  math.Min(w[paramNoise], o.NoiseScaleSD),
+		MotionNoise:   d.MotionNoise * math.Exp(best[paramMotion]),
+		TubeRatio:     math.Expm1(best[paramTube]),
 		LogLikelihood: top,
 		LpSD:          w[paramLp],
-		RatioSD:       contrastSD(h, all),
-		LpProfile:     profile(m.value, best, top, paramLp, w[paramLp], b),
+		RatioSD:       contrastSD(h, free),
+		LpProfile:     profile(m.value, best, top, paramLp, free, w[paramLp], b),
 		DragPaS:       Interval{math.Exp(best[paramDrag]), math.NaN(), math.NaN()},
+		peak:          best,
 	}
 	level := distuv.ChiSquared{K: 1}.Quantile(o.Confidence) / 2
 	if !o.LpOnly {
-		r.DragProfile = profile(m.value, best, top, paramDrag, w[paramDrag], b)
+		r.DragProfile = profile(m.value, best, top, paramDrag, free, w[paramDrag], b)
 		r.DragPaS = interval(r.DragProfile, best[paramDrag], level)
 		for i := range d.Tracks {
 			r.Tracks = append(r.Tracks, m.single(i, best, b))
@@ -99,19 +111,35 @@ func Fit(d Data, o Options) (Result, error) {
 	if math.IsInf(r.LpUm.High, 1) {
 		r.LpUm.Value = math.NaN()
 	}
-	const near = 1e-2
 	for _, end := range []float64{r.LpUm.Low, r.LpUm.High} {
 		if end > 0 && !math.IsInf(end, 1) {
-			drag := r.LpProfile.dragAt(math.Log(end))
-			r.AtDragLimit = r.AtDragLimit || drag < b.low[paramDrag]+near || drag > b.high[paramDrag]-near
+			r.AtDragLimit = r.AtDragLimit || b.atDragLimit(r.LpProfile.dragAt(math.Log(end)))
 		}
 	}
+	r.PeakAtDragLimit = b.atDragLimit(best[paramDrag])
 	return r, nil
+}
+
+// bounds are how far each parameter may go.
+func (o Options) bounds() bounds {
+	return bounds{
+		low:  vector{math.Log(o.LpLowUm), math.Log(o.DragLowPaS), -8 * o.NoiseScaleSD, -4 * o.MotionNoiseSD, 0},
+		high: vector{math.Log(o.LpHighUm), math.Log(o.DragHighPaS), 8 * o.NoiseScaleSD, 4 * o.MotionNoiseSD, mostTube},
+	}
+}
+
+// mostTube bounds ln(1 + x) of the tube: a million times as stiff as the first mode.
+const mostTube = 14
+
+// free says which parameters d can tell anything about.
+func (o Options) free(d Data) [params]bool {
+	return [params]bool{paramLp: true, paramDrag: true, paramNoise: true,
+		paramMotion: d.MotionNoise > 0 && d.ExposureS > 0 && o.MotionNoiseSD > 0, paramTube: o.Confined}
 }
 
 // search climbs from the best place of a coarse grid, and from the best one at a drag well away from that, since blur and
 // slowness can each explain a weak fluctuation and the likelihood may have two peaks.
-func search(f func(vector) float64, b bounds) (vector, float64) {
+func search(f func(vector) float64, free [params]bool, b bounds) (vector, float64) {
 	type place struct {
 		at    vector
 		value float64
@@ -120,7 +148,7 @@ func search(f func(vector) float64, b bounds) (vector, float64) {
 	for z := math.Log(1e-3); z < math.Log(2); z += 1.5 {
 		best := place{value: math.Inf(-1)}
 		for x := math.Log(0.03); x < math.Log(5e4); x += 1.1 {
-			at := b.clamp(vector{x, z, 0})
+			at := b.clamp(vector{paramLp: x, paramDrag: z})
 			if v := f(at); v > best.value {
 				best = place{at, v}
 			}
@@ -139,10 +167,10 @@ func search(f func(vector) float64, b bounds) (vector, float64) {
 			other = s
 		}
 	}
-	all := [params]bool{true, true, true}
-	at, value := maximise(f, top.at, all, b)
+	free[paramTube] = false
+	at, value := maximise(f, top.at, free, b)
 	if !math.IsInf(other.value, -1) {
-		if p, v := maximise(f, other.at, all, b); v > value+1e-6 {
+		if p, v := maximise(f, other.at, free, b); v > value+1e-6 {
 			at, value = p, v
 		}
 	}

@@ -12,6 +12,12 @@ func (b bounds) clamp(at vector) vector {
 	return at
 }
 
+// atDragLimit says whether a log drag stands at an end of its range.
+func (b bounds) atDragLimit(drag float64) bool {
+	const near = 1e-2
+	return drag < b.low[paramDrag]+near || drag > b.high[paramDrag]-near
+}
+
 // step of the finite differences, in logarithms: small against every width met, large against rounding.
 const diffStep = 2e-3
 

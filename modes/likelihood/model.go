@@ -20,11 +20,15 @@ type Track struct {
 type Data struct {
 	Frames
 	TemperatureK float64
-	// MotionNoise is the share of the variance that a mode loses to the exposure which a frame shows
-	// again as white noise; 0 where frames are exact means over the exposure.
+	// MotionNoise is the share of the variance that a mode loses to the exposure which a frame is expected to show
+	// again as white noise; 0 where frames are exact means over the exposure. [Options.MotionNoiseSD] says how well it is known.
 	MotionNoise float64
 	Tracks      []Track
 }
+
+// jitter is by what share of the exposure a frame may start too early: clocks of cameras and computers differ. Such
+// frames count as following without a gap.
+const jitter = 0.05
 
 // check reports what keeps d from being fitted.
 func (d Data) check() error {
@@ -40,9 +44,9 @@ func (d Data) check() error {
 		return fmt.Errorf("likelihood: exposure %g s, want 0 or more", d.ExposureS)
 	}
 	for i := 1; i < n; i++ {
-		if gap := d.TimesS[i] - d.TimesS[i-1]; !(gap > 0) || gap < d.ExposureS*(1-1e-3) {
-			return fmt.Errorf("likelihood: frame %d starts %g s after the one before, want more than 0 and at least the exposure %g s",
-				i, gap, d.ExposureS)
+		if gap := d.TimesS[i] - d.TimesS[i-1]; !(gap > 0) || gap < d.ExposureS*(1-jitter) {
+			return fmt.Errorf("likelihood: frame %d starts %g s after the one before, want more than 0 and at least the exposure %g s less %g %%",
+				i, gap, d.ExposureS, 100*jitter)
 		}
 	}
 	for _, t := range d.Tracks {
@@ -71,15 +75,23 @@ func (d Data) check() error {
 // per length in Pa·s and a temperature in K.
 func ModeProcess(wavenumberPerUm, lpUm, dragPaS, temperatureK float64) Process {
 	k2 := wavenumberPerUm * wavenumberPerUm
-	v := 1 / (lpUm * k2 * k2)
+	return held(lpUm*k2*k2, dragPaS, temperatureK)
+}
+
+// held is the process of a mode that a stiffness of kT·perUm3 holds: variance 1/perUm3.
+func held(perUm3, dragPaS, temperatureK float64) Process {
+	v := 1 / perUm3
 	return Process{Variance: v, RelaxationS: dragPaS * v / (boltzmann * temperatureK * 1e18)}
 }
 
-// The parameters of the fit are logarithms: of Lp in µm, of the drag in Pa·s, of the noise scale.
+// The parameters of the fit are logarithms: of Lp in µm, of the drag in Pa·s, of the factor on the predicted noise, of the
+// factor on the expected motion noise, and of 1 + x, where x is the tube's stiffness over the first mode's own, γ/(κk₁⁴): 0 is a free filament.
 const (
 	paramLp = iota
 	paramDrag
 	paramNoise
+	paramMotion
+	paramTube
 	params
 )
 
@@ -87,29 +99,48 @@ type vector [params]float64
 
 // model is the log-likelihood as a function of the parameters.
 type model struct {
-	d        Data
-	priorVar float64 // of the log noise scale
-	scratch  []float64
+	d         Data
+	noiseVar  float64 // prior variance of the log noise scale
+	motionVar float64 // prior variance of the log factor on the motion noise
+	first4    float64 // fourth power of the first mode's wavenumber, 1/µm⁴
+	scratch   []float64
 }
 
-// track returns the restricted log-likelihood of track i alone, the prior excluded.
+func newModel(d Data, o Options) *model {
+	m := &model{d: d, noiseVar: o.NoiseScaleSD * o.NoiseScaleSD, motionVar: o.MotionNoiseSD * o.MotionNoiseSD, first4: math.Inf(1)}
+	for _, t := range d.Tracks {
+		m.first4 = math.Min(m.first4, math.Pow(t.WavenumberPerUm, 4))
+	}
+	return m
+}
+
+// process is that of a mode at a place in the space of parameters.
+func (m *model) process(wavenumberPerUm float64, at vector) Process {
+	k4 := math.Pow(wavenumberPerUm, 4) + math.Expm1(at[paramTube])*m.first4
+	return held(math.Exp(at[paramLp])*k4, math.Exp(at[paramDrag]), m.d.TemperatureK)
+}
+
+// track returns the restricted log-likelihood of track i alone, the priors excluded.
 func (m *model) track(i int, at vector) float64 {
 	t := m.d.Tracks[i]
-	p := ModeProcess(t.WavenumberPerUm, math.Exp(at[paramLp]), math.Exp(at[paramDrag]), m.d.TemperatureK)
+	p := m.process(t.WavenumberPerUm, at)
 	c := math.Exp(at[paramNoise])
 	if m.scratch == nil {
 		m.scratch = make([]float64, len(m.d.TimesS))
 	}
-	motion := m.d.MotionNoise * Hidden(p, m.d.ExposureS)
+	motion := m.d.MotionNoise * math.Exp(at[paramMotion]) * Hidden(p, m.d.ExposureS)
 	for j, r := range t.NoiseVariance {
 		m.scratch[j] = c*r + motion
 	}
 	return filter(p, m.d.Frames, t.Amplitude, m.scratch).restricted()
 }
 
-// value is the restricted log-likelihood of all tracks with the prior of the noise scale.
+// value is the restricted log-likelihood of all tracks with the priors.
 func (m *model) value(at vector) float64 {
-	sum := -at[paramNoise] * at[paramNoise] / (2 * m.priorVar)
+	sum := -at[paramNoise] * at[paramNoise] / (2 * m.noiseVar)
+	if at[paramMotion] != 0 {
+		sum -= at[paramMotion] * at[paramMotion] / (2 * m.motionVar)
+	}
 	for i := range m.d.Tracks {
 		sum += m.track(i, at)
 	}

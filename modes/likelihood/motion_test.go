@@ -21,7 +21,7 @@ func TestHidden(t *testing.T) {
 // variances raised by hand, and without exposure it does nothing.
 func TestMotionNoiseIsNoise(t *testing.T) {
 	const share = 0.05
-	at := vector{math.Log(8), math.Log(4e-3), 0}
+	at := vector{paramLp: math.Log(8), paramDrag: math.Log(4e-3)}
 	for _, exposure := range []float64{0, 0.2} {
 		d := movie(8, 8, 4e-3, 40, 0.4, exposure, 1e-4, 1, rand.New(rand.NewPCG(5, 6)))
 		raised := d
@@ -35,9 +35,9 @@ func TestMotionNoiseIsNoise(t *testing.T) {
 			}
 			raised.Tracks = append(raised.Tracks, copied)
 		}
-		plain := (&model{d: d, priorVar: 1}).value(at)
+		plain := newModel(d, DefaultOptions()).value(at)
 		d.MotionNoise = share
-		got, want := (&model{d: d, priorVar: 1}).value(at), (&model{d: raised, priorVar: 1}).value(at)
+		got, want := newModel(d, DefaultOptions()).value(at), newModel(raised, DefaultOptions()).value(at)
 		if !(math.Abs(got-want) < 1e-9*math.Abs(want)) {
 			t.Errorf("exposure %g s: log-likelihood %.9f, want %.9f", exposure, got, want)
 		}

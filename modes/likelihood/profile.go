@@ -83,9 +83,8 @@ func (p Profile) crossing(peak, level float64, side int) float64 {
 // profileDepth is how far down, in log-likelihood, a profile is followed.
 const profileDepth = 9
 
-// profile follows the maximum of f over the other parameters as parameter which moves away from best, where f is top.
-func profile(f func(vector) float64, best vector, top float64, which int, width float64, b bounds) Profile {
-	free := [params]bool{true, true, true}
+// profile follows the maximum of f over the other free parameters as parameter which moves away from best, where f is top.
+func profile(f func(vector) float64, best vector, top float64, which int, free [params]bool, width float64, b bounds) Profile {
 	free[which] = false
 	if !(width > 1e-3) {
 		width = 1e-3

@@ -88,7 +88,8 @@ func (t tally) bias() (mean, rms, predicted float64) {
 type row struct {
 	condition
 	lp, drag, modes, tangent, distance tally
-	thermal, changing                  int
+	thermal, not, tube, pinned         int
+	changing, disagree                 int
 }
 
 // cover analyses reps movies of every condition.
@@ -129,12 +130,22 @@ func cover(cs []condition, reps int, seed uint64, workers int) []row {
 					r.distance.enter(e.Value, e.Low, e.High, c.lpUm)
 				}
 			}
-			if res.Thermal == modes.ThermalYes {
+			switch res.Thermal {
+			case modes.ThermalYes:
 				r.thermal++
+			case modes.ThermalNo:
+				r.not++
 			}
 			for _, f := range res.Flags {
-				if f == modes.FlagChanging {
+				switch f {
+				case modes.FlagChanging:
 					r.changing++
+				case modes.FlagConfined:
+					r.tube++
+				case modes.FlagPinned:
+					r.pinned++
+				case modes.FlagModesDisagree:
+					r.disagree++
 				}
 			}
 		}
@@ -145,17 +156,19 @@ func cover(cs []condition, reps int, seed uint64, workers int) []row {
 
 // write prints the rows and, last, all of them together.
 func write(w io.Writer, rows []row) {
-	fmt.Fprintln(w, "drag mPa·s | length µm | Lp µm | frames | interval s | exposure s | noise µm³ | noise scale | n | covered | low > truth | high < truth | open | bias ln | rms ln | predicted | drag covered | modes covered | bias | tangent covered | bias | distance covered | bias | thermal | changing")
+	fmt.Fprintln(w, "drag mPa·s | length µm | Lp µm | frames | interval s | exposure s | noise µm³ | noise scale | n | covered | low > truth | high < truth | open | bias ln | rms ln | predicted | drag covered | modes covered | bias | tangent covered | bias | distance covered | bias | thermal yes | no | tube | pinned | changing | modes disagree")
 	var all row
 	for _, r := range rows {
 		mean, rms, predicted := r.lp.bias()
 		modesBias, _, _ := r.modes.bias()
 		tangentBias, _, _ := r.tangent.bias()
 		distanceBias, _, _ := r.distance.bias()
-		fmt.Fprintf(w, "%.1f | %.0f | %.0f | %d | %.1f | %.2f | %.0e | %.2f | %d | %.3f | %d | %d | %d | %+.3f | %.3f | %.3f | %.3f | %.3f | %+.3f | %.3f | %+.3f | %.3f | %+.3f | %d | %d\n",
+		fmt.Fprintf(w, "%.1f | %.0f | %.0f | %d | %.1f | %.2f | %.0e | %.2f | %d | %.3f | %d | %d | %d | %+.3f | %.3f | %.3f | %.3f | %.3f | %+.3f | %.3f | %+.3f | %.3f | %+.3f | %d | %d | %d | %d | %d | %d\n",
 			r.dragPaS*1e3, r.lengthUm, r.lpUm, r.frames, r.intervalS, r.exposureS, r.noiseUm3, r.noiseScale, r.lp.n,
 			r.lp.covered(), r.lp.lowMiss, r.lp.highMiss, r.lp.open, mean, rms, predicted,
-			r.drag.covered(), r.modes.covered(), modesBias, r.tangent.covered(), tangentBias, r.distance.covered(), distanceBias, r.thermal, r.changing)
+			r.drag.covered(), r.modes.covered(), modesBias, r.tangent.covered(), tangentBias, r.distance.covered(), distanceBias, r.thermal, r.not, r.tube, r.pinned, r.changing, r.disagree)
+		all.thermal, all.not, all.tube, all.pinned = all.thermal+r.thermal, all.not+r.not, all.tube+r.tube, all.pinned+r.pinned
+		all.changing, all.disagree = all.changing+r.changing, all.disagree+r.disagree
 		all.lp.n, all.lp.held, all.lp.none = all.lp.n+r.lp.n, all.lp.held+r.lp.held, all.lp.none+r.lp.none
 		all.drag.n, all.drag.held, all.drag.none = all.drag.n+r.drag.n, all.drag.held+r.drag.held, all.drag.none+r.drag.none
 		all.modes.n, all.modes.held, all.modes.none = all.modes.n+r.modes.n, all.modes.held+r.modes.held, all.modes.none+r.modes.none
@@ -165,6 +178,7 @@ func write(w io.Writer, rows []row) {
 		all.lp.widths = append(all.lp.widths, r.lp.widths...)
 	}
 	mean, rms, _ := all.lp.bias()
-	fmt.Fprintf(w, "all: %d movies, covered %.3f, drag %.3f, modes %.3f, tangent %.3f, distance %.3f, bias ln %+.3f, rms ln %.3f\n",
-		all.lp.n, all.lp.covered(), all.drag.covered(), all.modes.covered(), all.tangent.covered(), all.distance.covered(), mean, rms)
+	fmt.Fprintf(w, "all: %d movies, covered %.3f, drag %.3f, modes %.3f, tangent %.3f, distance %.3f, bias ln %+.3f, rms ln %.3f, thermal yes %d, no %d, tube %d, pinned %d, changing %d, modes disagree %d, not answered %d\n",
+		all.lp.n, all.lp.covered(), all.drag.covered(), all.modes.covered(), all.tangent.covered(), all.distance.covered(), mean, rms,
+		all.thermal, all.not, all.tube, all.pinned, all.changing, all.disagree, all.lp.none)
 }

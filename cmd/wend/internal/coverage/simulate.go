@@ -64,8 +64,11 @@ func simulate(c condition, rng *rand.Rand) modes.Series {
 		}
 	}
 	turned := 2 * math.Pi * rng.Float64()
+	stepUm := math.Sqrt(2 * chain.KT(temperatureK) * 1e18 / (c.dragPaS * c.lengthUm) * c.intervalS)
+	driftX, driftY := 0.0, 0.0
 	for i := range c.frames {
 		turned += 0.02 * rng.NormFloat64()
+		driftX, driftY = driftX+stepUm*rng.NormFloat64(), driftY+stepUm*rng.NormFloat64()
 		x, y := 0.0, 0.0
 		curve := modes.Curve{XUm: []float64{0}, YUm: []float64{0}}
 		for j := range steps {
@@ -79,9 +82,21 @@ func simulate(c condition, rng *rand.Rand) modes.Series {
 				curve.XUm, curve.YUm = append(curve.XUm, x), append(curve.YUm, y)
 			}
 		}
+		place(curve, driftX, driftY)
 		s.Curves = append(s.Curves, curve)
 	}
 	return s
+}
+
+// place moves the middle of c to x, y.
+func place(c modes.Curve, x, y float64) {
+	mx, my := 0.0, 0.0
+	for i := range c.XUm {
+		mx, my = mx+c.XUm[i]/float64(len(c.XUm)), my+c.YUm[i]/float64(len(c.XUm))
+	}
+	for i := range c.XUm {
+		c.XUm[i], c.YUm[i] = c.XUm[i]+x-mx, c.YUm[i]+y-my
+	}
 }
 
 // hiddenShare returns the share of the contour length that beam mode n of wavenumber k hides, less what its noise adds.

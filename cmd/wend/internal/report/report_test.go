@@ -92,7 +92,7 @@ func TestOpensWithTheAnswer(t *testing.T) {
 		// Half the interval's width is 3.5: two digits of it are tenths.
 		"the persistence length is 17.2 µm (95 % interval 14.1 to 21.0 µm), from",
 		"about 61 independent shapes",
-		"the persistence length is at least 123 µm (95 %)",
+		"the persistence length is at least 123 µm (97.5 %)",
 		"no persistence length is given: the fluctuations do not agree with thermal ones (pinned, changing)",
 	} {
 		if at := strings.Index(html.UnescapeString(text), want); at < 0 || at > first {

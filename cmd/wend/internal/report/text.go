@@ -43,11 +43,14 @@ func answer(f *job.Filament) string {
 		}
 		return s + ", " + frames + "."
 	case lpBound:
-		return fmt.Sprintf("the persistence length is at least %s µm (95 %%), %s; the movie sets no upper limit.", v.Low, frames)
+		return fmt.Sprintf("the persistence length is at least %s µm (97.5 %%), %s; the movie sets no upper limit.", v.Low, frames)
 	}
 	why := "the movie does not allow an estimate"
-	if f.Thermal == "no" {
+	switch {
+	case f.Thermal == "no":
 		why = "the fluctuations do not agree with thermal ones"
+	case f.Confinement == "pinned":
+		why = "the filament is stuck"
 	}
 	if f.FramesUsed == 0 {
 		why = "no frame could be used"
@@ -147,7 +150,7 @@ func methodsParagraph(r *job.Result) []string {
 		}
 	}
 	var b strings.Builder
-	fmt.Fprintf(&b, "Movies of %s of %d × %d pixels (%s µm per pixel%s) were analysed with wend %s (%s ridge filter).",
+	fmt.Fprintf(&b, "A movie of %s of %d × %d pixels (%s µm per pixel%s) was analysed with wend %s (%s ridge filter).",
 		plural(tables.Summarise(r).Counts.Frames, "frame", "frames"), r.Info.Width, r.Info.Height, plain(s.PixelUm), timing(r), r.Version, r.RidgeImplementation)
 	b.WriteString(" In each frame, filaments were found on a ridge map (second derivatives of the smoothed image, in units of the image's own noise), and the centreline of each was fitted to all of its pixels at once as a cubic B-spline blurred by a Gaussian, by least squares weighted with the camera noise, which gives its position together with the error.")
 	if seHigh > 0 {
@@ -171,8 +174,9 @@ func methodsParagraph(r *job.Result) []string {
 		if s.ExposureS == 0 {
 			b.WriteString(" No correction for motion during the exposure was made.")
 		} else {
-			fmt.Fprintf(&b, " Of the undulation that the exposure averages away, %s %% is taken to remain as noise of the contours, as found on synthetic movies.", digits(100*trace.MotionNoise, 2))
+			fmt.Fprintf(&b, " Of the undulation that the exposure averages away, a share remains as noise of the contours; it was fitted, expected at %s %% within a factor of two, as found on synthetic movies.", digits(100*trace.MotionNoise, 2))
 		}
+		b.WriteString(" A filament was called confined where a harmonic tube, which adds its stiffness γ to κk⁴, raised twice the log-likelihood by more than 7.7; stiffness and tube were then fitted together.")
 	}
 	var classic []string
 	if methods["modes"] {
