@@ -13,7 +13,7 @@
 // A worm-like chain in the image plane: bending energy ½κ∫θ′² with κ = Lp·kT, free ends, local drag. The recommended estimate is the
 // exact likelihood of the beam-mode amplitudes over time ([wend/modes/likelihood]). Beside it stand the classic ones: the
 // variances of the cosine modes of the tangent angle (Gittes, Mickey, Nettleton and Howard, J. Cell Biol.
-// 120:923 (1993)), the tangent correlation and the mean-square distance between the ends, each corrected for noise and exposure as
+// 120:923 (1993), cited from memory), the tangent correlation and the mean-square distance between the ends, each corrected for noise and exposure as
 // far as the theory goes. Their intervals count independent shapes, not frames.
 //
 // # Limits

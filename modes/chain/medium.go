@@ -27,7 +27,7 @@ func WaterViscosity(tempK float64) float64 {
 // plane wall and across its own axis: 4πη/arccosh(h/a), for viscosity eta (Pa·s), radius a
 // and height h of the axis above the wall, both in one unit. Along its axis the rod feels
 // half of it. NaN unless height > radius > 0.
-// Source: Jeffrey & Onishi, Q. J. Mech. Appl. Math. 34:129 (1981).
+// Source: Jeffrey & Onishi, Q. J. Mech. Appl. Math. 34:129 (1981), cited from memory.
 func DragNearWall(eta, radius, height float64) float64 {
 	if !(radius > 0 && height > radius) {
 		return math.NaN()

@@ -18,7 +18,7 @@
 // A harmonic tube of stiffness γ per length adds γ to κk⁴ and leaves the modes of a rod with free ends as they are.
 // The intrinsic shape is a constant of unknown value per mode and is taken out by
 // generalised least squares, so the likelihood is the restricted one (Patterson and Thompson,
-// Biometrika 58:545 (1971)) and the variance does not shrink by the mean that was subtracted.
+// Biometrika 58:545 (1971), cited from memory) and the variance does not shrink by the mean that was subtracted.
 //
 // # Limits
 //

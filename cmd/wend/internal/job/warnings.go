@@ -7,7 +7,7 @@ import (
 )
 
 // Version is the program's version; it stands in every result.
-const Version = "0.1.0"
+const Version = "0.2.0"
 
 // warnings are the sentences about a result that its user must read.
 func warnings(r *Result) []Warning {
