@@ -72,7 +72,8 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 	}
 	r2 -= 2 * endVariance
 	length := func(lpUm float64) float64 {
-		return a.measuredUm + a.missingLength(theory{lpUm: lpUm, dragPaS: t.dragPaS, noiseScale: t.noiseScale, tubeRatio: t.tubeRatio})
+		missing := a.missingLength(theory{lpUm: lpUm, dragPaS: t.dragPaS, noiseScale: t.noiseScale, tubeRatio: t.tubeRatio})
+		return a.measuredUm + math.Max(-a.measuredUm/2, missing) // noise can't have added more
 	}
 	missing := func(x float64) float64 { // falls with Lp where it crosses zero
 		lp := math.Exp(x)

@@ -1,7 +1,7 @@
 // Coverage answers: how often do the 95 % intervals of the persistence length hold the truth, and is the estimate biased?
 //
 // It draws contours of free filaments with known stiffness, drag and noise over a grid of movies, analyses each as a measured one
-// would be, and prints a row per kind of movie, the worst first.
+// would be, and prints a row per level of every quantity, the overall figures, and, with -v, a row per condition, the worst first.
 package main
 
 import (
@@ -14,6 +14,7 @@ import (
 	"runtime"
 	"sort"
 	"sync"
+	"text/tabwriter"
 
 	"wend/modes"
 )
@@ -23,10 +24,11 @@ func main() { os.Exit(run(os.Args[1:], os.Stdout, os.Stderr)) }
 func run(args []string, stdout, stderr io.Writer) int {
 	fs := flag.NewFlagSet("coverage", flag.ContinueOnError)
 	fs.SetOutput(stderr)
-	reps := fs.Int("repeats", 100, "`movies` per condition")
-	count := fs.Int("conditions", 36, "`number` of conditions")
+	reps := fs.Int("repeats", 10, "`movies` per condition")
+	count := fs.Int("conditions", 140, "`number` of conditions")
 	seed := fs.Uint64("seed", 1, "`seed` of the draws")
 	workers := fs.Int("workers", runtime.NumCPU(), "`number` of movies at a time")
+	verbose := fs.Bool("v", false, "a row for every condition too")
 	if err := fs.Parse(args); err != nil {
 		return 2
 	}
@@ -35,150 +37,161 @@ func run(args []string, stdout, stderr io.Writer) int {
 		return 2
 	}
 	rows := cover(conditions(*count), *reps, *seed, *workers)
-	sort.SliceStable(rows, func(i, j int) bool { return rows[i].lp.covered() < rows[j].lp.covered() })
-	write(stdout, rows)
+	if *verbose {
+		sort.SliceStable(rows, func(i, j int) bool { return rows[i].lp.covered() < rows[j].lp.covered() })
+		writeConditions(stdout, rows)
+	}
+	writeLevels(stdout, rows)
 	return 0
-}
-
-// tally gathers estimates of one quantity by one method.
-type tally struct {
-	n, held, lowMiss, highMiss, open, none int
-	errors, widths                         []float64 // of the logarithm
-}
-
-// enter adds an estimate of truth: value NaN where there is only a bound, and low NaN where there is nothing.
-func (t *tally) enter(value, low, high, truth float64) {
-	t.n++
-	switch {
-	case math.IsNaN(low):
-		t.none++
-		return
-	case low > truth:
-		t.lowMiss++
-	case high < truth:
-		t.highMiss++
-	default:
-		t.held++
-	}
-	if math.IsInf(high, 1) || math.IsNaN(value) {
-		t.open++
-		return
-	}
-	t.errors = append(t.errors, math.Log(value/truth))
-	t.widths = append(t.widths, math.Log(high/low)/(2*1.959964))
-}
-
-func (t tally) covered() float64 { return float64(t.held) / float64(t.n-t.none) }
-
-// bias returns mean and root mean square of the logarithmic error, and the median of what the intervals predict for it.
-func (t tally) bias() (mean, rms, predicted float64) {
-	for _, e := range t.errors {
-		mean += e / float64(len(t.errors))
-		rms += e * e / float64(len(t.errors))
-	}
-	if len(t.widths) == 0 {
-		return math.NaN(), math.NaN(), math.NaN()
-	}
-	w := append([]float64(nil), t.widths...)
-	sort.Float64s(w)
-	return mean, math.Sqrt(rms), w[len(w)/2]
 }
 
 // row is what a condition gave.
 type row struct {
 	condition
+	boundSD                            float64
 	lp, drag, modes, tangent, distance tally
-	thermal, not, tube, pinned         int
+	yes, no, tube, pinned              int
 	changing, disagree                 int
 }
 
 // cover analyses reps movies of every condition.
 func cover(cs []condition, reps int, seed uint64, workers int) []row {
 	results := make([]modes.Result, len(cs)*reps)
+	rows := make([]row, len(cs))
 	jobs := make(chan int)
 	var wait sync.WaitGroup
 	for range workers {
-		wait.Add(1)
-		go func() {
-			defer wait.Done()
+		wait.Go(func() {
 			for j := range jobs {
+				c := cs[j/reps]
+				if j%reps == 0 {
+					rows[j/reps] = row{condition: c, boundSD: c.bound()}
+				}
 				rng := rand.New(rand.NewPCG(seed, uint64(j)))
-				results[j] = modes.Analyse(simulate(cs[j/reps], rng), modes.DefaultOptions())
+				results[j] = modes.Analyse(simulate(c, rng), modes.DefaultOptions())
 			}
-		}()
+		})
 	}
 	for j := range results {
 		jobs <- j
 	}
 	close(jobs)
 	wait.Wait()
-	var rows []row
-	for i, c := range cs {
-		r := row{condition: c}
+	for i := range rows {
 		for _, res := range results[i*reps : (i+1)*reps] {
-			r.lp.enter(res.LpUm, res.LpLowUm, res.LpHighUm, c.lpUm)
-			for _, e := range res.Estimates {
-				switch {
-				case e.Quantity == modes.QuantityDrag:
-					r.drag.enter(e.Value, e.Low, e.High, c.dragPaS)
-				case e.Quantity != modes.QuantityLp:
-				case e.Method == modes.MethodModes:
-					r.modes.enter(e.Value, e.Low, e.High, c.lpUm)
-				case e.Method == modes.MethodTangent:
-					r.tangent.enter(e.Value, e.Low, e.High, c.lpUm)
-				case e.Method == modes.MethodDistance:
-					r.distance.enter(e.Value, e.Low, e.High, c.lpUm)
-				}
-			}
-			switch res.Thermal {
-			case modes.ThermalYes:
-				r.thermal++
-			case modes.ThermalNo:
-				r.not++
-			}
-			for _, f := range res.Flags {
-				switch f {
-				case modes.FlagChanging:
-					r.changing++
-				case modes.FlagConfined:
-					r.tube++
-				case modes.FlagPinned:
-					r.pinned++
-				case modes.FlagModesDisagree:
-					r.disagree++
-				}
-			}
+			rows[i].enter(res)
 		}
-		rows = append(rows, r)
 	}
 	return rows
 }
 
-// write prints the rows and, last, all of them together.
-func write(w io.Writer, rows []row) {
-	fmt.Fprintln(w, "drag mPa·s | length µm | Lp µm | frames | interval s | exposure s | noise µm³ | noise scale | n | covered | low > truth | high < truth | open | bias ln | rms ln | predicted | drag covered | modes covered | bias | tangent covered | bias | distance covered | bias | thermal yes | no | tube | pinned | changing | modes disagree")
+// enter adds a movie's result.
+func (r *row) enter(res modes.Result) {
+	r.lp.enter(res.LpUm, res.LpLowUm, res.LpHighUm, r.lpUm, r.boundSD)
+	for _, e := range res.Estimates {
+		switch {
+		case e.Quantity == modes.QuantityDrag:
+			r.drag.enter(e.Value, e.Low, e.High, r.dragPaS, math.Inf(1))
+		case e.Quantity != modes.QuantityLp:
+		case e.Method == modes.MethodModes:
+			r.modes.enter(e.Value, e.Low, e.High, r.lpUm, r.boundSD)
+		case e.Method == modes.MethodTangent:
+			r.tangent.enter(e.Value, e.Low, e.High, r.lpUm, r.boundSD)
+		case e.Method == modes.MethodDistance:
+			r.distance.enter(e.Value, e.Low, e.High, r.lpUm, r.boundSD)
+		}
+	}
+	switch res.Thermal {
+	case modes.ThermalYes:
+		r.yes++
+	case modes.ThermalNo:
+		r.no++
+	}
+	for _, f := range res.Flags {
+		switch f {
+		case modes.FlagChanging:
+			r.changing++
+		case modes.FlagConfined:
+			r.tube++
+		case modes.FlagPinned:
+			r.pinned++
+		case modes.FlagModesDisagree:
+			r.disagree++
+		}
+	}
+}
+
+// add adds the counts of another row.
+func (r *row) add(o row) {
+	r.lp.add(o.lp)
+	r.drag.add(o.drag)
+	r.modes.add(o.modes)
+	r.tangent.add(o.tangent)
+	r.distance.add(o.distance)
+	r.yes, r.no, r.tube, r.pinned = r.yes+o.yes, r.no+o.no, r.tube+o.tube, r.pinned+o.pinned
+	r.changing, r.disagree = r.changing+o.changing, r.disagree+o.disagree
+}
+
+const columns = "n\tcovered\tlow > truth\thigh < truth\tno value\tnone\tbias ln\t± s.e.\tsharp\tanswered\tspread/bound\twidth/bound\tdrag\tmodes\tbias\ttangent\tbias\tdistance\tbias\tyes\tno\ttube\tpinned\tchanging\tdisagree"
+
+func (r row) cells() string {
+	b, se := r.lp.bias()
+	sharp, answered, spread, width := r.lp.sharp()
+	mb, _ := r.modes.bias()
+	tb, _ := r.tangent.bias()
+	db, _ := r.distance.bias()
+	return fmt.Sprintf("%d\t%.3f\t%d\t%d\t%d\t%d\t%+.3f\t%.3f\t%d\t%.3f\t%.2f\t%.2f\t%.3f\t%.3f\t%+.2f\t%.3f\t%+.2f\t%.3f\t%+.2f\t%d\t%d\t%d\t%d\t%d\t%d",
+		r.lp.n, r.lp.covered(), r.lp.lowMiss, r.lp.highMiss, r.lp.open, r.lp.none, b, se, sharp, answered, spread, width, r.drag.covered(),
+		r.modes.covered(), mb, r.tangent.covered(), tb, r.distance.covered(), db, r.yes, r.no, r.tube, r.pinned, r.changing, r.disagree)
+}
+
+// writeConditions prints a row per condition.
+func writeConditions(w io.Writer, rows []row) {
+	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', tabwriter.AlignRight)
+	fmt.Fprintln(t, "drag mPa·s\tL µm\tLp µm\tframes\tinterval s\texposure s\tnoise µm³\tscale\tbend 1/µm\tbound\t"+columns+"\t")
+	for _, r := range rows {
+		fmt.Fprintf(t, "%.1f\t%.0f\t%.3g\t%d\t%.3g\t%.2g\t%.1e\t%.2f\t%.2f\t%.3f\t%s\t\n", r.dragPaS*1e3, r.lengthUm, r.lpUm, r.frames, r.intervalS, r.exposureS,
+			r.noiseUm3, r.noiseScale, r.bendPerUm, r.boundSD, r.cells())
+	}
+	t.Flush()
+}
+
+// writeLevels prints a row per level of every quantity and one for all.
+func writeLevels(w io.Writer, rows []row) {
+	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', tabwriter.AlignRight)
+	fmt.Fprintln(t, "quantity\tlevel\t"+columns+"\t")
+	for q, first := range rows[0].level.named() {
+		var order []string
+		sums := map[string]*row{}
+		for _, r := range rows {
+			level := r.level.named()[q][1]
+			if sums[level] == nil {
+				sums[level] = &row{}
+				order = append(order, level)
+			}
+			sums[level].add(r)
+		}
+		sort.Slice(order, func(i, j int) bool { return less(order[i], order[j]) })
+		for _, level := range order {
+			fmt.Fprintf(t, "%s\t%s\t%s\t\n", first[0], level, sums[level].cells())
+		}
+	}
 	var all row
 	for _, r := range rows {
-		mean, rms, predicted := r.lp.bias()
-		modesBias, _, _ := r.modes.bias()
-		tangentBias, _, _ := r.tangent.bias()
-		distanceBias, _, _ := r.distance.bias()
-		fmt.Fprintf(w, "%.1f | %.0f | %.0f | %d | %.1f | %.2f | %.0e | %.2f | %d | %.3f | %d | %d | %d | %+.3f | %.3f | %.3f | %.3f | %.3f | %+.3f | %.3f | %+.3f | %.3f | %+.3f | %d | %d | %d | %d | %d | %d\n",
-			r.dragPaS*1e3, r.lengthUm, r.lpUm, r.frames, r.intervalS, r.exposureS, r.noiseUm3, r.noiseScale, r.lp.n,
-			r.lp.covered(), r.lp.lowMiss, r.lp.highMiss, r.lp.open, mean, rms, predicted,
-			r.drag.covered(), r.modes.covered(), modesBias, r.tangent.covered(), tangentBias, r.distance.covered(), distanceBias, r.thermal, r.not, r.tube, r.pinned, r.changing, r.disagree)
-		all.thermal, all.not, all.tube, all.pinned = all.thermal+r.thermal, all.not+r.not, all.tube+r.tube, all.pinned+r.pinned
-		all.changing, all.disagree = all.changing+r.changing, all.disagree+r.disagree
-		all.lp.n, all.lp.held, all.lp.none = all.lp.n+r.lp.n, all.lp.held+r.lp.held, all.lp.none+r.lp.none
-		all.drag.n, all.drag.held, all.drag.none = all.drag.n+r.drag.n, all.drag.held+r.drag.held, all.drag.none+r.drag.none
-		all.modes.n, all.modes.held, all.modes.none = all.modes.n+r.modes.n, all.modes.held+r.modes.held, all.modes.none+r.modes.none
-		all.tangent.n, all.tangent.held, all.tangent.none = all.tangent.n+r.tangent.n, all.tangent.held+r.tangent.held, all.tangent.none+r.tangent.none
-		all.distance.n, all.distance.held, all.distance.none = all.distance.n+r.distance.n, all.distance.held+r.distance.held, all.distance.none+r.distance.none
-		all.lp.errors = append(all.lp.errors, r.lp.errors...)
-		all.lp.widths = append(all.lp.widths, r.lp.widths...)
+		all.add(r)
 	}
-	mean, rms, _ := all.lp.bias()
-	fmt.Fprintf(w, "all: %d movies, covered %.3f, drag %.3f, modes %.3f, tangent %.3f, distance %.3f, bias ln %+.3f, rms ln %.3f, thermal yes %d, no %d, tube %d, pinned %d, changing %d, modes disagree %d, not answered %d\n",
-		all.lp.n, all.lp.covered(), all.drag.covered(), all.modes.covered(), all.tangent.covered(), all.distance.covered(), mean, rms,
-		all.thermal, all.not, all.tube, all.pinned, all.changing, all.disagree, all.lp.none)
+	fmt.Fprintf(t, "all\t\t%s\t\n", all.cells())
+	t.Flush()
+	fmt.Fprintf(w, "sharp: movies with a Cramér–Rao standard deviation of ln Lp below %g; answered: with a value; spread/bound: rms of the error over it; width/bound: median width over 3.92 times it\n", sharpTo)
+}
+
+// less orders levels by their numbers where they start with one.
+func less(a, b string) bool {
+	var x, y float64
+	_, ea := fmt.Sscanf(a, "%g", &x)
+	_, eb := fmt.Sscanf(b, "%g", &y)
+	if ea == nil && eb == nil {
+		return x < y
+	}
+	return a < b
 }

@@ -16,6 +16,9 @@ type condition struct {
 	intervalS, exposureS    float64
 	noiseUm3                float64
 	noiseScale              float64 // true noise over predicted
+	bendPerUm               float64 // curvature of the intrinsic shape
+	// The places in the grid that these numbers come from.
+	level levels
 }
 
 const (
@@ -23,7 +26,6 @@ const (
 	psfUm        = 0.13
 	spacingUm    = 0.1
 	finestUm     = 6.8 * psfUm // wavelength below which a contour holds neither signal nor noise
-	bendPerUm    = 0.01        // curvature of the intrinsic shape
 )
 
 // simulate draws the contours of a movie: exposure-averaged thermal modes about a bent shape, and noise of the density that is
@@ -72,7 +74,7 @@ func simulate(c condition, rng *rand.Rand) modes.Series {
 		x, y := 0.0, 0.0
 		curve := modes.Curve{XUm: []float64{0}, YUm: []float64{0}}
 		for j := range steps {
-			angle := turned + bendPerUm*(float64(j)+0.5)*h
+			angle := turned + c.bendPerUm*(float64(j)+0.5)*h
 			for n, b := range amplitude {
 				angle += b[i] * slopes[j*len(amplitude)+n]
 			}
@@ -113,26 +115,4 @@ func hiddenShare(n int, k float64, c condition) float64 {
 		sum += d * d / cells
 	}
 	return lost * sum / (2 * math.Pow(c.lengthUm, 3))
-}
-
-// conditions is the grid: every value of every quantity occurs about equally often, in combinations drawn with a fixed seed.
-func conditions(count int) []condition {
-	rng := rand.New(rand.NewPCG(2024, 1))
-	column := func(values ...float64) []float64 {
-		out := make([]float64, count)
-		for i := range out {
-			out[i] = values[i%len(values)]
-		}
-		rng.Shuffle(count, func(i, j int) { out[i], out[j] = out[j], out[i] })
-		return out
-	}
-	drag, length, lp := column(2.4e-3, 5e-3, 1e-2), column(4, 7, 12, 20), column(2, 6, 12, 20)
-	frames, interval := column(50, 100, 200, 500), column(0.1, 0.3, 1)
-	exposure, noise, scale := column(0.02, 0.1, 1), column(5e-5, 2e-4, 1e-3), column(0.8, 1, 1.25)
-	var out []condition
-	for i := range count {
-		c := condition{drag[i], length[i], lp[i], int(frames[i]), interval[i], math.Min(exposure[i], interval[i]), noise[i], scale[i]}
-		out = append(out, c)
-	}
-	return out
 }
