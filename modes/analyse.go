@@ -227,6 +227,41 @@ func (r *Result) classic(a amplitudes, fit likelihood.Result, t theory, s Series
 		note = "the ends are as far apart as the contour is long within the noise, or the exposure hides most of the contraction"
 	}
 	r.add(QuantityLp, MethodDistance, distance.lpUm, distance.low, distance.high, note)
+	r.distribution(a, fit, t, s)
+	r.compare()
+}
+
+// distribution enters the persistence length from the distribution of the distance between the ends.
+func (r *Result) distribution(a amplitudes, fit likelihood.Result, t theory, s Series) {
+	const longest = 1 // persistence lengths, up to which the theory of a nearly straight chain holds
+	e := Estimate{QuantityLp, MethodDistribution, math.NaN(), math.NaN(), math.NaN(), ""}
+	switch {
+	case t.lpUnresolved:
+		e.Note = "fluctuations not resolved"
+	case a.lengthUm > longest*t.lpUm:
+		e.Note = "not given: the filament is longer than its persistence length"
+	default:
+		d := fitContraction(a, t, s.LengthSEUm)
+		d.low, d.high = widen(d.lpUm, d.low, d.high, t, fit.RatioSD, func(c theory) float64 { return fitContraction(a, c, s.LengthSEUm).lpUm })
+		e.Note = "most likely distribution of the distance between the ends, with exposure, noise and mean shape"
+		switch {
+		case math.IsNaN(d.lpUm):
+			e.Note = "not given: the light, the frames or the resolution do not suffice"
+		case math.IsInf(d.high, 1):
+			d.lpUm, e.Note = math.NaN(), "no upper limit: the corrections for noise and exposure are as large as the contraction"
+		}
+		e.Value, e.Low, e.High = d.lpUm, d.low, d.high
+	}
+	r.Estimates = append(r.Estimates, e)
+}
+
+// compare flags classic estimates whose interval excludes the recommended one's.
+func (r *Result) compare() {
+	for _, e := range r.Estimates {
+		if e.Quantity == QuantityLp && e.Method != MethodLikelihood && (e.Low > r.LpHighUm || e.High < r.LpLowUm) {
+			r.flag(FlagMethodsDisagree)
+		}
+	}
 }
 
 // classicConfined takes away what the classic methods say of a filament in a tube: they are for free ones.
@@ -247,6 +282,7 @@ func (r *Result) classicConfined() {
 	r.TangentFitLpUm, r.TangentFitIntercept = nan, nan
 	r.add(QuantityLp, MethodTangent, nan, nan, nan, forFree)
 	r.add(QuantityLp, MethodDistance, nan, nan, nan, forFree)
+	r.add(QuantityLp, MethodDistribution, nan, nan, nan, forFree)
 }
 
 const forFree = "not given: the filament is confined, and this method is for free ones"

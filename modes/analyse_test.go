@@ -17,17 +17,19 @@ func TestAnalyseRecovers(t *testing.T) {
 	} {
 		const runs = 8
 		held, drag, wrong := map[string]int{}, 0, 0
+		given := map[string]int{}
 		sum, width := map[string]float64{}, map[string]float64{}
-		methods := []string{MethodLikelihood, MethodModes, MethodTangent, MethodDistance}
+		methods := []string{MethodLikelihood, MethodModes, MethodTangent, MethodDistance, MethodDistribution}
 		for i := range runs {
 			f := tc.f
 			f.seed = uint64(100 + i)
 			r := Analyse(f.series(t), DefaultOptions())
 			for _, m := range methods {
 				e := estimate(t, r, QuantityLp, m)
-				if math.IsNaN(e.Value) { // called confined
+				if math.IsNaN(e.Value) { // called confined, or too long for the theory of the distribution
 					continue
 				}
+				given[m]++
 				if e.Low <= f.lpUm && f.lpUm <= e.High {
 					held[m]++
 				}
@@ -45,6 +47,9 @@ func TestAnalyseRecovers(t *testing.T) {
 			}
 		}
 		for _, m := range methods {
+			if m == MethodDistribution && tc.f.lengthUm > tc.f.lpUm && given[m] < runs/2 {
+				continue
+			}
 			t.Logf("%s, %s: %d of %d held, mean error of ln Lp %+.3f, predicted sd %.3f", tc.name, m, held[m], runs, sum[m], width[m])
 			// Of 8 intervals of 95 % fewer than 5 hold the truth with probability 0.0004.
 			if held[m] < 5 {

@@ -2,25 +2,26 @@ package modes
 
 // Flags of a [Result].
 const (
-	FlagLowerBound    = "lower_bound"    // only a lower bound of the persistence length
-	FlagFewShapes     = "few_shapes"     // few independent shapes, however many frames
-	FlagFewFrames     = "few_frames"     // too few usable frames for any estimate
-	FlagShort         = "short"          // no or hardly any bending mode is long enough to be resolved
-	FlagChanging      = "changing"       // the halves of the movie disagree
-	FlagDrag          = "drag"           // the drag is far from that of a filament in water
-	FlagDragLimit     = "drag_limit"     // an end of the interval rests on the range allowed for the drag
-	FlagEnds          = "ends"           // an end was not seen
-	FlagLength        = "length_scatter" // the length scatters more than its errors: contours are mis-traced in places
-	FlagNoBlur        = "no_blur_correction"
-	FlagNotThermal    = "not_thermal"
-	FlagLargeBends    = "large_bends"    // bends beyond which the small-angle dynamics hold less well
-	FlagFit           = "fit"            // a fit failed
-	FlagConfined      = "confined"       // a tube explains the modes better
-	FlagModesDisagree = "modes_disagree" // the modes do not tell one persistence length
-	FlagNoise         = "noise"          // the noise is far from the predicted
-	FlagPinned        = "pinned"         // a place along the filament stays where it is
-	FlagProcessed     = "processed"      // the images are not as the camera took them
-	FlagProjection    = "projection"     // the chamber is too deep for planar theory
+	FlagLowerBound      = "lower_bound"    // only a lower bound of the persistence length
+	FlagFewShapes       = "few_shapes"     // few independent shapes, however many frames
+	FlagFewFrames       = "few_frames"     // too few usable frames for any estimate
+	FlagShort           = "short"          // no or hardly any bending mode is long enough to be resolved
+	FlagChanging        = "changing"       // the halves of the movie disagree
+	FlagDrag            = "drag"           // the drag is far from that of a filament in water
+	FlagDragLimit       = "drag_limit"     // an end of the interval rests on the range allowed for the drag
+	FlagEnds            = "ends"           // an end was not seen
+	FlagLength          = "length_scatter" // the length scatters more than its errors: contours are mis-traced in places
+	FlagNoBlur          = "no_blur_correction"
+	FlagNotThermal      = "not_thermal"
+	FlagLargeBends      = "large_bends"      // bends beyond which the small-angle dynamics hold less well
+	FlagFit             = "fit"              // a fit failed
+	FlagConfined        = "confined"         // a tube explains the modes better
+	FlagModesDisagree   = "modes_disagree"   // the modes do not tell one persistence length
+	FlagNoise           = "noise"            // the noise is far from the predicted
+	FlagPinned          = "pinned"           // a place along the filament stays where it is
+	FlagProcessed       = "processed"        // the images are not as the camera took them
+	FlagMethodsDisagree = "methods_disagree" // a classic estimate and the likelihood exclude each other
+	FlagProjection      = "projection"       // the chamber is too deep for planar theory
 )
 
 // Reasons why a [Mode] is not used.
@@ -48,12 +49,13 @@ const (
 
 // Quantities and methods of an [Estimate].
 const (
-	QuantityLp       = "lp_um"
-	QuantityRigidity = "bending_rigidity_N_m2"
-	QuantityDrag     = "drag_Pa_s"
-	QuantitySlowest  = "slowest_s"
-	MethodLikelihood = "likelihood"
-	MethodModes      = "modes"
-	MethodTangent    = "tangent"
-	MethodDistance   = "distance"
+	QuantityLp         = "lp_um"
+	QuantityRigidity   = "bending_rigidity_N_m2"
+	QuantityDrag       = "drag_Pa_s"
+	QuantitySlowest    = "slowest_s"
+	MethodLikelihood   = "likelihood"
+	MethodModes        = "modes"
+	MethodTangent      = "tangent"
+	MethodDistance     = "distance"
+	MethodDistribution = "distribution"
 )

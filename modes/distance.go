@@ -108,10 +108,7 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 		variance = 0
 	}
 	for m, s := range a.turnSpreads(t) {
-		e := slopeSquare(m+1) / (2 * l * l)
-		if m%2 == 1 { // even modes: ψ(L) = -ψ(0) = ∓2/√L
-			e -= 8 / (l * l)
-		}
+		e := contractionGain(m+1, l)
 		variance += s * e * e
 	}
 	contraction := length(fit.lpUm) - math.Sqrt(math.Max(0, r2))
@@ -144,6 +141,15 @@ func (a amplitudes) missingLength(t theory) float64 {
 	}
 	// The finer modes, with ∫ψ′² → k² and k → (m+½)π/L.
 	return sum + a.lengthUm*a.lengthUm/(2*math.Pi*math.Pi*t.lpUm*float64(count+1))
+}
+
+// contractionGain returns what a unit of b_m² takes from the distance between the ends, 1/µm²: ½[∫ψ′² − (ψ(L)−ψ(0))²/L].
+func contractionGain(m int, lengthUm float64) float64 {
+	g := slopeSquare(m) / (2 * lengthUm * lengthUm)
+	if m%2 == 0 { // even modes: ψ(L) = -ψ(0) = ∓2/√L
+		g -= 8 / (lengthUm * lengthUm)
+	}
+	return g
 }
 
 // slopeSquare returns ∫ψ_m′² over a filament of unit length: σk(σk+6) with σ = tanh(k/2) for odd m and coth(k/2) for even.

@@ -48,10 +48,10 @@ func run(args []string, stdout, stderr io.Writer) int {
 // row is what a condition gave.
 type row struct {
 	condition
-	boundSD                            float64
-	lp, drag, modes, tangent, distance tally
-	yes, no, tube, pinned              int
-	changing, disagree                 int
+	boundSD                                          float64
+	lp, drag, modes, tangent, distance, distribution tally
+	yes, no, tube, pinned                            int
+	changing, disagree                               int
 }
 
 // cover analyses reps movies of every condition.
@@ -99,6 +99,8 @@ func (r *row) enter(res modes.Result) {
 			r.tangent.enter(e.Value, e.Low, e.High, r.lpUm, r.boundSD)
 		case e.Method == modes.MethodDistance:
 			r.distance.enter(e.Value, e.Low, e.High, r.lpUm, r.boundSD)
+		case e.Method == modes.MethodDistribution:
+			r.distribution.enter(e.Value, e.Low, e.High, r.lpUm, r.boundSD)
 		}
 	}
 	switch res.Thermal {
@@ -128,11 +130,12 @@ func (r *row) add(o row) {
 	r.modes.add(o.modes)
 	r.tangent.add(o.tangent)
 	r.distance.add(o.distance)
+	r.distribution.add(o.distribution)
 	r.yes, r.no, r.tube, r.pinned = r.yes+o.yes, r.no+o.no, r.tube+o.tube, r.pinned+o.pinned
 	r.changing, r.disagree = r.changing+o.changing, r.disagree+o.disagree
 }
 
-const columns = "n\tcovered\tlow > truth\thigh < truth\tno value\tnone\tbias ln\t± s.e.\tsharp\tanswered\tspread/bound\twidth/bound\tdrag\tmodes\tbias\ttangent\tbias\tdistance\tbias\tyes\tno\ttube\tpinned\tchanging\tdisagree"
+const columns = "n\tcovered\tlow > truth\thigh < truth\tno value\tnone\tbias ln\t± s.e.\tsharp\tanswered\tspread/bound\twidth/bound\tdrag\tmodes\tbias\ttangent\tbias\tdistance\tbias\tdistribution\tbias\tyes\tno\ttube\tpinned\tchanging\tdisagree"
 
 func (r row) cells() string {
 	b, se := r.lp.bias()
@@ -140,9 +143,10 @@ func (r row) cells() string {
 	mb, _ := r.modes.bias()
 	tb, _ := r.tangent.bias()
 	db, _ := r.distance.bias()
-	return fmt.Sprintf("%d\t%.3f\t%d\t%d\t%d\t%d\t%+.3f\t%.3f\t%d\t%.3f\t%.2f\t%.2f\t%.3f\t%.3f\t%+.2f\t%.3f\t%+.2f\t%.3f\t%+.2f\t%d\t%d\t%d\t%d\t%d\t%d",
+	cb, _ := r.distribution.bias()
+	return fmt.Sprintf("%d\t%.3f\t%d\t%d\t%d\t%d\t%+.3f\t%.3f\t%d\t%.3f\t%.2f\t%.2f\t%.3f\t%.3f\t%+.2f\t%.3f\t%+.2f\t%.3f\t%+.2f\t%.3f\t%+.2f\t%d\t%d\t%d\t%d\t%d\t%d",
 		r.lp.n, r.lp.covered(), r.lp.lowMiss, r.lp.highMiss, r.lp.open, r.lp.none, b, se, sharp, answered, spread, width, r.drag.covered(),
-		r.modes.covered(), mb, r.tangent.covered(), tb, r.distance.covered(), db, r.yes, r.no, r.tube, r.pinned, r.changing, r.disagree)
+		r.modes.covered(), mb, r.tangent.covered(), tb, r.distance.covered(), db, r.distribution.covered(), cb, r.yes, r.no, r.tube, r.pinned, r.changing, r.disagree)
 }
 
 // writeConditions prints a row per condition.

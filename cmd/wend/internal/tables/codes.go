@@ -72,12 +72,14 @@ var codes = []Code{
 	{KindFlag, "drag", "The fitted drag is far from that of a filament in water; the frame interval, the exposure or the thermal assumption may be wrong."},
 	{KindFlag, "drag_limit", "An end of the interval rests on the range allowed for the drag, so that the interval may be too narrow on that side; a shorter frame interval lets the movie itself say what the drag is."},
 	{KindFlag, "length_scatter", "The measured length scatters more than the light explains: in some frames the trace runs on into a spot or noise, or breaks off. Look at the frames; the persistence length may be too small."},
+	{KindFlag, "methods_disagree", "A classic estimate and the recommended one exclude each other (estimates.csv). Where it is tangent or distance, mostly the filament is bent by itself, which they read as flexibility, or its length is off; where it is modes, look at the mode spectrum for the one that stands out."},
 	{KindFlag, "fit", "A fit did not converge, and its estimate is left out."},
 
 	{KindMethod, "likelihood", "Exact likelihood of the bending modes over time, with exposure, noise, drag and intrinsic shape taken into account: the recommended estimate."},
 	{KindMethod, "modes", "Variances of the cosine modes of the tangent angle, corrected for noise, exposure and intrinsic shape."},
 	{KindMethod, "tangent", "Decay of the tangent correlation along the filament, with the offset from localisation noise fitted."},
 	{KindMethod, "distance", "Mean-square distance between the ends, against the contour length."},
+	{KindMethod, "distribution", "Distribution of the distance between the ends over the frames, of a filament shorter than its persistence length."},
 	{KindMethod, "known", "A stiffness that the user gave, measured elsewhere; not an estimate from this movie."},
 	{KindMethod, "bound", "The movie gives only a lower bound: lp_um is empty and lp_high_um is inf."},
 
