@@ -65,6 +65,7 @@ func Analyse(s Series, o Options) Result {
 		r.flag(FlagFewShapes)
 	}
 	r.dynamics(a, fit, bound)
+	r.medium(a, s, o)
 	r.classic(a, fit, t, s, o)
 	if len(s.Curves) >= minScatter && s.LengthSEUm > 0 && s.LengthSDUm > lengthScatter*s.LengthSEUm {
 		r.flag(FlagLength)
@@ -81,7 +82,7 @@ func Analyse(s Series, o Options) Result {
 	if disagree(a, o) {
 		r.flag(FlagChanging)
 	}
-	r.judge(a, fit, t, bound, o)
+	r.judge(a, fit, t, bound, s, o)
 	return r
 }
 

@@ -30,6 +30,9 @@ type Series struct {
 	TemperatureK float64
 	// ChamberUm is the depth of the chamber, µm; 0 where it is not known.
 	ChamberUm float64
+	// RadiusUm is the filament's radius, µm, ViscosityPaS the medium's viscosity, Pa·s, and HeightUm the height of the filament's axis over a wall, µm; 0
+	// where they are not known.
+	RadiusUm, ViscosityPaS, HeightUm float64
 	// Processed says that the images were denoised, resampled or compressed with loss, so that NoiseUm3 is not to be trusted.
 	Processed bool
 	// FreeEnds says whether both ends were seen.

@@ -5,7 +5,6 @@ import (
 
 	"gonum.org/v1/gonum/stat/distuv"
 
-	"wend/modes/chain"
 	"wend/modes/likelihood"
 )
 
@@ -18,8 +17,8 @@ const (
 	notThermal   = 0.7  // this standard deviation of ln Lp between modes, a factor of two, or
 	notLocalDrag = 1.0  // this one of ln ζ: relaxation times that do not follow a drag
 	mostExcess   = 1.5  // variance over the thermal one that must be excluded in every mode for a yes
-	dragTooLow   = 0.5  // times the drag in water, which the interval must reach to pass as an aqueous medium
-	dragTooHigh  = 100  // times the drag in water, beyond which the drag is flagged
+	dragTooLow   = 0.5  // times the drag that theory expects, which the interval must reach
+	dragTooHigh  = 100  // times that drag, beyond which the drag is flagged
 	resolvedTo   = 0.5  // standard deviation of ln Lp up to which the fluctuation counts as resolved
 	tubeGain     = 7.7  // twice the log-likelihood gained by a tube, exceeded by three free filaments in a thousand
 	tubeDoubt    = 2.71 // the same, by one in twenty
@@ -60,10 +59,10 @@ func (r *Result) confine(d likelihood.Data, free likelihood.Result, o Options) l
 // judge fills Thermal and the flags behind it. "yes" is earned: modes that agree on one persistence length and one drag, well enough to
 // exclude an excess of half the thermal variance in any of them, a drag of an aqueous medium or a more viscous one, and no flag that speaks
 // against it. "no" needs modes that disagree beyond doubt, and takes the persistence length away, as does a stuck filament.
-func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool, o Options) {
-	water := chain.DragUnbounded(chain.WaterViscosity(a.temperatureK), a.k[0], o.RadiusUm)
-	plausible := math.IsNaN(water) || fit.DragPaS.High >= dragTooLow*water
-	if !plausible || fit.DragPaS.Low > dragTooHigh*water {
+func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool, s Series, o Options) {
+	expected, _ := a.expectedDrag(s, o)
+	plausible := math.IsNaN(expected) || fit.DragPaS.High >= dragTooLow*expected
+	if !plausible || fit.DragPaS.Low > dragTooHigh*expected {
 		r.flag(FlagDrag)
 	}
 	if math.Abs(math.Log(fit.NoiseScale)) > noiseFar*o.Likelihood.NoiseScaleSD {
@@ -114,7 +113,7 @@ func (r *Result) withhold(why string) {
 	r.LpUm, r.LpLowUm, r.LpHighUm, r.LpFrom = nan, nan, nan, ""
 	r.TangentFitLpUm, r.TangentFitIntercept = nan, nan
 	for i := range r.Estimates {
-		if e := &r.Estimates[i]; e.Quantity == QuantityLp || e.Quantity == QuantityRigidity {
+		if e := &r.Estimates[i]; e.Quantity == QuantityLp || e.Quantity == QuantityRigidity || e.Quantity == QuantityModulus {
 			e.Value, e.Low, e.High, e.Note = nan, nan, nan, "not given: "+why
 		}
 	}
@@ -129,7 +128,7 @@ func (r *Result) widen(factor float64) {
 	low, high := math.Pow(r.LpLowUm/r.LpUm, factor), math.Pow(r.LpHighUm/r.LpUm, factor)
 	r.LpLowUm, r.LpHighUm = r.LpUm*low, r.LpUm*high
 	for i := range r.Estimates {
-		if e := &r.Estimates[i]; e.Method == MethodLikelihood && (e.Quantity == QuantityLp || e.Quantity == QuantityRigidity) {
+		if e := &r.Estimates[i]; e.Method == MethodLikelihood && (e.Quantity == QuantityLp || e.Quantity == QuantityRigidity || e.Quantity == QuantityModulus) {
 			e.Low, e.High = e.Value*low, e.Value*high
 			if e.Quantity == QuantityLp {
 				e.Note += "; interval widened because the modes disagree"

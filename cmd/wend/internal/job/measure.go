@@ -224,7 +224,8 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 // SeriesOf is what the analysis sees of a filament: its used frames.
 func SeriesOf(f trace.Filament, timesS []float64, s Settings, widthUm float64) modes.Series {
 	out := modes.Series{PSFUm: widthUm, MotionNoise: trace.MotionNoise, IntervalS: s.IntervalS, ExposureS: s.ExposureS,
-		TemperatureK: s.TemperatureC + chain.ZeroCelsius, ChamberUm: s.ChamberUm, FreeEnds: true}
+		TemperatureK: s.TemperatureC + chain.ZeroCelsius, ChamberUm: s.ChamberUm, RadiusUm: s.RadiusNm / 1000,
+		ViscosityPaS: s.ViscosityMPas / 1000, HeightUm: s.HeightUm, FreeEnds: true}
 	var lengths, errors []float64
 	for _, c := range f.Contours {
 		if !c.Used() {

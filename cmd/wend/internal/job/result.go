@@ -12,10 +12,10 @@ type Settings struct {
 	IntervalS    float64
 	ExposureS    float64
 	TemperatureC float64
-	Setting      string  // free, network or adsorbed
-	Channel      int     // from 1
-	ChamberUm    float64 // 0: not given
+	Setting      string // free, network or adsorbed
+	Channel      int    // from 1
 	MinLengthUm  float64
+	Sample
 	// FirstFrame and LastFrame bound the frames analysed, both included, from 0; LastFrame -1 means to the end.
 	FirstFrame, LastFrame int
 	Gain, Offset          float64 // NaN: estimated from the stack

@@ -18,16 +18,33 @@ type Request struct {
 	PixelUm, IntervalS, ExposureS, TemperatureC float64
 	Setting                                     string
 	Channel                                     int
-	ChamberUm, MinLengthUm                      float64
-	FirstFrame, LastFrame                       int // from 0; LastFrame -1: to the end
-	Gain, Offset                                float64
-	ReadableFrames                              bool
+	MinLengthUm                                 float64
+	Sample
+	FirstFrame, LastFrame int // from 0; LastFrame -1: to the end
+	Gain, Offset          float64
+	ReadableFrames        bool
+}
+
+// Sample is what may be known of the sample: the depth of the chamber, the radius of the filament, the viscosity of the medium and the height of the
+// filament over the chamber's wall. NaN in a Request and 0 in Settings stand for what is not known.
+type Sample struct {
+	ChamberUm, RadiusNm, ViscosityMPas, HeightUm float64
+}
+
+// values are the sample's numbers with their keys in a summary, in a fixed order.
+func (s *Sample) values() []sampleValue {
+	return []sampleValue{{"chamber_um", &s.ChamberUm}, {"radius_nm", &s.RadiusNm}, {"viscosity_mpas", &s.ViscosityMPas}, {"height_um", &s.HeightUm}}
+}
+
+type sampleValue struct {
+	key   string
+	value *float64
 }
 
 // NewRequest asks for nothing: every value comes from the file.
 func NewRequest() Request {
 	nan := math.NaN()
-	return Request{PixelUm: nan, IntervalS: nan, ExposureS: nan, TemperatureC: nan, ChamberUm: nan, MinLengthUm: nan,
+	return Request{PixelUm: nan, IntervalS: nan, ExposureS: nan, TemperatureC: nan, MinLengthUm: nan, Sample: Sample{nan, nan, nan, nan},
 		LastFrame: -1, Gain: nan, Offset: nan}
 }
 
@@ -54,6 +71,9 @@ func (r Request) Check() error {
 		{"--exposure-s", r.ExposureS, r.ExposureS >= 0, "seconds, 0 or above; 0 makes no correction for motion during the exposure"},
 		{"--temperature-c", r.TemperatureC, r.TemperatureC > -20 && r.TemperatureC < 110, "°C of the sample, -20 to 110"},
 		{"--chamber-um", r.ChamberUm, r.ChamberUm > 0, "the chamber's depth in µm, above 0"},
+		{"--radius-nm", r.RadiusNm, r.RadiusNm > 0 && r.RadiusNm < 1000, "the filament's radius in nm, above 0 and below 1000"},
+		{"--viscosity-mpas", r.ViscosityMPas, r.ViscosityMPas > 0, "the medium's viscosity in mPa·s, above 0"},
+		{"--height-um", r.HeightUm, r.HeightUm > 0, "the filament's height over the wall in µm, above 0"},
 		{"--min-length-um", r.MinLengthUm, r.MinLengthUm >= 0.5, "µm, 0.5 or more"},
 		{"--gain", r.Gain, r.Gain > 0, "counts per photoelectron, above 0"},
 		{"--offset", r.Offset, !math.IsInf(r.Offset, 0), "counts without light"},
@@ -111,9 +131,12 @@ func (r Request) resolve(info imaging.Info, frames int) (Settings, error) {
 		s.Sources["temperature_c"] = "assumed"
 	}
 	s.MinLengthUm = pick("min_length_um", "--min-length-um", r.MinLengthUm, nowhere, defaultMinLengthUm)
-	if !math.IsNaN(r.ChamberUm) {
-		s.ChamberUm = r.ChamberUm
-		s.Sources["chamber_um"] = "flag"
+	known := r.Sample.values()
+	for i, v := range s.Sample.values() {
+		if given := *known[i].value; !math.IsNaN(given) {
+			*v.value = given
+			s.Sources[v.key] = "flag"
+		}
 	}
 	if len(missing) > 0 {
 		return s, usage("%s: the file does not say its %s: pass %s", info.Path, calibrationNames(missing), strings.Join(missing, ", "))

@@ -105,6 +105,8 @@ var quantityNames = map[string]string{
 	"lp_um":                   "persistence length (µm)",
 	"bending_rigidity_N_m2":   "bending rigidity (N·m²)",
 	"drag_Pa_s":               "transverse drag per length (Pa·s)",
+	"youngs_modulus_Pa":       "Young's modulus (Pa)",
+	"drag_expected_Pa_s":      "drag to expect (Pa·s)",
 	"slowest_s":               "relaxation time of the slowest mode (s)",
 	"tube_rms_um":             "tube rms (µm)",
 	"tube_diameter_um":        "tube diameter (µm)",

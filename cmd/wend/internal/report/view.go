@@ -297,8 +297,13 @@ func settings(r *job.Result) []settingRow {
 		{"gain (counts per photoelectron)", number(s.Gain.Value, "estimated"), s.Gain.Source},
 		{"offset (counts)", number(s.Offset.Value, "estimated"), s.Offset.Source},
 	}
-	if c := s.ChamberUm.Value; c != nil && *c > 0 {
-		rows = append(rows, settingRow{"chamber depth (µm)", plain(*c), s.ChamberUm.Source})
+	for _, v := range []struct {
+		name string
+		tables.SettingValue[*float64]
+	}{{"chamber depth (µm)", s.ChamberUm}, {"filament radius (nm)", s.RadiusNm}, {"viscosity (mPa·s)", s.ViscosityMPas}, {"height over the wall (µm)", s.HeightUm}} {
+		if v.Value != nil && *v.Value > 0 {
+			rows = append(rows, settingRow{v.name, plain(*v.Value), v.Source})
+		}
 	}
 	if s.ReadableFrames.Value {
 		rows = append(rows, settingRow{"intact pages of a damaged stack only", "yes", s.ReadableFrames.Source})

@@ -81,6 +81,7 @@ var codes = []Code{
 	{KindMethod, "distance", "Mean-square distance between the ends, against the contour length."},
 	{KindMethod, "distribution", "Distribution of the distance between the ends over the frames, of a filament shorter than its persistence length."},
 	{KindMethod, "known", "A stiffness that the user gave, measured elsewhere; not an estimate from this movie."},
+	{KindMethod, "theory", "Not an estimate: what theory expects for the sample as it was described."},
 	{KindMethod, "bound", "The movie gives only a lower bound: lp_um is empty and lp_high_um is inf."},
 
 	{KindThermal, "yes", "All bending modes agree on one persistence length and one drag, well enough to exclude half as much bending again of another kind in any of the four longest waves."},

@@ -60,6 +60,9 @@ type SettingsSummary struct {
 	Setting        SettingValue[string]   `json:"setting"`
 	Channel        SettingValue[int]      `json:"channel"`
 	ChamberUm      SettingValue[*float64] `json:"chamber_um"`
+	RadiusNm       SettingValue[*float64] `json:"radius_nm"`
+	ViscosityMPas  SettingValue[*float64] `json:"viscosity_mpas"`
+	HeightUm       SettingValue[*float64] `json:"height_um"`
 	MinLengthUm    SettingValue[*float64] `json:"min_length_um"`
 	FirstFrame     SettingValue[int]      `json:"first_frame"`
 	LastFrame      SettingValue[int]      `json:"last_frame"`
@@ -143,7 +146,8 @@ func Summarise(r *job.Result) Summary {
 			PixelUm: float("pixel_um", s.PixelUm), IntervalS: float("interval_s", s.IntervalS),
 			ExposureS: float("exposure_s", s.ExposureS), TemperatureC: float("temperature_c", s.TemperatureC),
 			Setting: SettingValue[string]{s.Setting, source("setting")}, Channel: SettingValue[int]{s.Channel, source("channel")},
-			ChamberUm: float("chamber_um", s.ChamberUm), MinLengthUm: float("min_length_um", s.MinLengthUm),
+			ChamberUm: float("chamber_um", s.ChamberUm), RadiusNm: float("radius_nm", s.RadiusNm),
+			ViscosityMPas: float("viscosity_mpas", s.ViscosityMPas), HeightUm: float("height_um", s.HeightUm), MinLengthUm: float("min_length_um", s.MinLengthUm),
 			FirstFrame: SettingValue[int]{s.FirstFrame, source("first_frame")}, LastFrame: SettingValue[int]{s.LastFrame, source("last_frame")},
 			Gain: float("gain", s.Gain), Offset: float("offset", s.Offset),
 			ReadableFrames: SettingValue[bool]{s.ReadableFrames, source("readable_frames")},
@@ -196,11 +200,13 @@ func (s *Summary) fill(r *job.Result) {
 		ByteOrder: in.ByteOrder, Compression: in.Compression, Layout: in.Layout}
 	r.Settings = job.Settings{PixelUm: value(set.PixelUm.Value), IntervalS: value(set.IntervalS.Value), ExposureS: value(set.ExposureS.Value),
 		TemperatureC: value(set.TemperatureC.Value), Setting: set.Setting.Value, Channel: set.Channel.Value,
-		ChamberUm: value(set.ChamberUm.Value), MinLengthUm: value(set.MinLengthUm.Value), FirstFrame: set.FirstFrame.Value,
+		Sample: job.Sample{ChamberUm: value(set.ChamberUm.Value), RadiusNm: value(set.RadiusNm.Value), ViscosityMPas: value(set.ViscosityMPas.Value),
+			HeightUm: value(set.HeightUm.Value)}, MinLengthUm: value(set.MinLengthUm.Value), FirstFrame: set.FirstFrame.Value,
 		LastFrame: set.LastFrame.Value, Gain: value(set.Gain.Value), Offset: value(set.Offset.Value), ReadableFrames: set.ReadableFrames.Value,
 		Sources: map[string]string{"pixel_um": set.PixelUm.Source, "interval_s": set.IntervalS.Source, "exposure_s": set.ExposureS.Source,
 			"temperature_c": set.TemperatureC.Source, "setting": set.Setting.Source, "channel": set.Channel.Source,
-			"chamber_um": set.ChamberUm.Source, "min_length_um": set.MinLengthUm.Source, "first_frame": set.FirstFrame.Source, "last_frame": set.LastFrame.Source,
+			"chamber_um": set.ChamberUm.Source, "radius_nm": set.RadiusNm.Source, "viscosity_mpas": set.ViscosityMPas.Source, "height_um": set.HeightUm.Source,
+			"min_length_um": set.MinLengthUm.Source, "first_frame": set.FirstFrame.Source, "last_frame": set.LastFrame.Source,
 			"gain": set.Gain.Source, "offset": set.Offset.Source, "readable_frames": set.ReadableFrames.Source}}
 	r.Camera = imaging.Camera{GainCounts: value(s.Camera.GainCounts), OffsetCounts: value(s.Camera.OffsetCounts),
 		ReadVariance: value(s.Camera.ReadVariance), Source: s.Camera.Source}
