@@ -18,6 +18,7 @@ const (
 	FlagConfined        = "confined"         // a tube explains the modes better
 	FlagModesDisagree   = "modes_disagree"   // the modes do not tell one persistence length
 	FlagNoise           = "noise"            // the noise is far from the predicted
+	FlagRolling         = "rolling"          // a bent filament shows mirrored shapes
 	FlagPinned          = "pinned"           // a place along the filament stays where it is
 	FlagProcessed       = "processed"        // the images are not as the camera took them
 	FlagMethodsDisagree = "methods_disagree" // a classic estimate and the likelihood exclude each other

@@ -79,6 +79,9 @@ func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool
 			return
 		}
 	}
+	if a.rolls(t, r.Shapes) {
+		r.flag(FlagRolling)
+	}
 	g := agree(fit)
 	if g.modes >= 2 && (g.p < pNotThermal && g.scatter > notThermal || g.dragP < pNotThermal && g.dragScatter > notLocalDrag) {
 		r.Thermal = ThermalNo
@@ -100,7 +103,7 @@ func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool
 func (r *Result) doubted() bool {
 	for _, f := range r.Flags {
 		switch f {
-		case FlagEnds, FlagLength, FlagChanging, FlagNoise, FlagFewShapes, FlagDragLimit, FlagDrag, FlagProcessed:
+		case FlagEnds, FlagLength, FlagChanging, FlagNoise, FlagFewShapes, FlagDragLimit, FlagDrag, FlagProcessed, FlagRolling:
 			return true
 		}
 	}

@@ -220,3 +220,30 @@ func TestProjectionFactor(t *testing.T) {
 		t.Errorf("a chamber of 4 µm for a filament of 10 µm: flags %v", r.Flags)
 	}
 }
+
+// A bent filament that rolls evenly about its axis is found, a bent one that does not roll is not.
+func TestRollingIsFound(t *testing.T) {
+	t.Parallel()
+	for _, rolling := range []bool{true, false} {
+		_, _, results := over(t, ordinary, func(s *Series, rng *rand.Rand) {
+			bend, turn := make([]float64, len(s.TimesS)), 0.0
+			for i := range bend {
+				bend[i] = 6 / math.Sqrt(ordinary.lpUm*math.Pow(BeamWavenumber(1, ordinary.lengthUm), 4))
+				if rolling {
+					bend[i] *= math.Cos(turn)
+				}
+				turn += 0.8 * rng.NormFloat64()
+			}
+			bendMore(s, 1, bend)
+		})
+		found := 0
+		for _, r := range results {
+			if has(r, FlagRolling) {
+				found++
+			}
+		}
+		if rolling && found < judged-2 || !rolling && found > 0 {
+			t.Errorf("rolling %v: %d of %d flagged", rolling, found, judged)
+		}
+	}
+}

@@ -56,6 +56,7 @@ var codes = []Code{
 	{KindFlag, "lower_bound", "The undulations are too small, or too few independent ones were seen, for an upper limit: only a lower bound of the persistence length is given; a longer filament, more light or a longer movie helps."},
 	{KindFlag, "pinned", "A place along the filament moves less than its bending alone would move it: it sticks to the surface there, and no persistence length is given. Leave it out, and passivate the chamber better."},
 	{KindFlag, "changing", "The first and the second half of the movie disagree: the filament stuck, broke, bundled or drifted out of focus; analyse the good part with --frames."},
+	{KindFlag, "rolling", "A filament with a bend of its own turned over and shows mirrored shapes, which widens the variance of the long waves and makes it look softer; use a thinner chamber."},
 	{KindFlag, "projection", "The chamber is deep enough for tilt and out-of-plane bending to matter, so that the planar theory gives too small a persistence length; use a thinner chamber or longer filaments."},
 	{KindFlag, "processed", "The noise of neighbouring pixels is correlated: the images were denoised, resampled or compressed with loss, so that the errors cannot be trusted; go back to the raw files."},
 	{KindFlag, "few_shapes", "The filament went through few independent shapes, so that the interval is wide however many frames there are; record for longer, not faster."},
