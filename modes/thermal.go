@@ -94,7 +94,7 @@ func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool
 		r.widen(math.Sqrt(math.Max(1, g.gain/float64(g.modes-1))))
 	}
 	agreed := g.modes >= 3 && g.p >= pDoubtful && g.dragP >= pDoubtful && g.excess <= mostExcess
-	if agreed && plausible && fit.LpSD < resolvedTo && !r.doubted() {
+	if agreed && plausible && fit.LpSD < resolvedTo && !r.doubted() && !a.irreversible(t) {
 		r.Thermal = ThermalYes
 	}
 }

@@ -247,3 +247,25 @@ func TestRollingIsFound(t *testing.T) {
 		}
 	}
 }
+
+// Two modes that turn about each other, as motors can make them, are told from the same two played forwards and backwards at once.
+func TestIrreversible(t *testing.T) {
+	f := ordinary
+	f.frames = 400
+	f.seed = 3
+	series := f.series(t)
+	a := measure(series, DefaultOptions())
+	th := theory{lpUm: f.lpUm, dragPaS: f.dragPaS, noiseScale: 1}
+	if a.irreversible(th) {
+		t.Error("a thermal movie is called irreversible")
+	}
+	rng := rand.New(rand.NewPCG(5, 5))
+	x, y := 0.0, 0.0
+	for i := range a.b[0] {
+		x, y = 0.6*x-0.3*y+rng.NormFloat64(), 0.6*y+0.3*x+rng.NormFloat64()
+		a.b[0][i], a.b[1][i] = x, y
+	}
+	if !a.irreversible(th) {
+		t.Error("circulating modes are called reversible")
+	}
+}
