@@ -13,7 +13,7 @@ import (
 func Analyse(s Series, o Options) Result {
 	nan := math.NaN()
 	r := Result{LpUm: nan, LpLowUm: nan, LpHighUm: nan, Shapes: nan, Thermal: ThermalUnclear, Confinement: ConfinementUnclear,
-		TangentFitLpUm: nan, TangentFitIntercept: nan}
+		TangentFitLpUm: nan, TangentFitIntercept: nan, Tube: noTube()}
 	if !s.FreeEnds {
 		r.flag(FlagEnds)
 	}

@@ -44,6 +44,8 @@ type Result struct {
 	Shapes float64
 	// Thermal is "yes", "no" or "unclear"; Confinement "free", "tube", "pinned" or "unclear".
 	Thermal, Confinement string
+	// Tube is what the surroundings do; without values in a setting where filaments are free.
+	Tube Tube
 	// Flags are short stable codes.
 	Flags []string
 	// TangentFitLpUm and TangentFitIntercept give the fitted line of the tangent
