@@ -1,6 +1,7 @@
 package likelihood
 
 import (
+	"errors"
 	"math"
 
 	"gonum.org/v1/gonum/stat/distuv"
@@ -15,6 +16,11 @@ type Options struct {
 	MotionNoiseSD float64
 	// Confined fits the stiffness of a harmonic tube too.
 	Confined bool
+	// Network fits the tube by its bulk rms, which every filament in it has; the tracks hold the two rigid modes too.
+	Network bool
+	// KnownLpUm is a persistence length known from elsewhere, µm, and KnownLpSD the standard deviation of its logarithm, 0 where it is taken as exact; KnownLpUm 0
+	// where nothing is known.
+	KnownLpUm, KnownLpSD float64
 	// DragLowPaS and DragHighPaS bound the search for the drag per length, Pa·s.
 	DragLowPaS, DragHighPaS float64
 	// LpLowUm and LpHighUm bound the search for the persistence length, µm.
@@ -57,10 +63,13 @@ type Result struct {
 	LpSD float64
 	// RatioSD is that of ln(drag/Lp), the logarithm of any mode's relaxation time.
 	RatioSD float64
-	// Tracks are the single modes, in the order of the data's.
+	// Tracks are the single bending modes, in the order of the data's.
 	Tracks []TrackFit
 	// LpProfile and DragProfile are in ln µm and ln Pa·s.
 	LpProfile, DragProfile Profile
+	// TubeRmsUm is the tube's bulk rms, µm, and TubeProfile its profile in ln µm, in a network.
+	TubeRmsUm   Interval
+	TubeProfile Profile
 	// AtDragLimit says that an end of the interval of Lp stands where the drag met the end of its range: the data alone do
 	// not give that end; PeakAtDragLimit that the peak stands there, where it means nothing.
 	AtDragLimit, PeakAtDragLimit bool
@@ -74,9 +83,20 @@ func Fit(d Data, o Options) (Result, error) {
 	if err := d.check(); err != nil {
 		return Result{}, err
 	}
+	for _, t := range d.Tracks {
+		if t.WavenumberPerUm == 0 && !o.Network {
+			return Result{}, errors.New("likelihood: a rigid mode, wavenumber 0, of a filament that no tube holds")
+		}
+	}
 	m, b, free := newModel(d, o), o.bounds(), o.free(d)
-	best, top := search(m.value, free, b)
-	if free[paramTube] {
+	var best vector
+	var top float64
+	if o.Network {
+		best, top = searchTube(m.value, free, b)
+	} else {
+		best, top = search(m.value, free, b)
+	}
+	if o.Confined {
 		// A tube hides from the grid: its ridge runs along from the free filament.
 		best, top = intoTube(m, best, top, free, b)
 	}
@@ -87,20 +107,34 @@ func Fit(d Data, o Options) (Result, error) {
 		NoiseScale:    math.Exp(best[paramNoise]),
 		NoiseScaleSD:  math.Min(w[paramNoise], o.NoiseScaleSD),
 		MotionNoise:   d.MotionNoise * math.Exp(best[paramMotion]),
-		TubeRatio:     math.Expm1(best[paramTube]),
 		LogLikelihood: top,
 		LpSD:          w[paramLp],
 		RatioSD:       contrastSD(h, free),
-		LpProfile:     profile(m.value, best, top, paramLp, free, w[paramLp], b),
 		DragPaS:       Interval{math.Exp(best[paramDrag]), math.NaN(), math.NaN()},
 		peak:          best,
+	}
+	if o.Network {
+		r.TubeRmsUm.Value = math.Exp(best[paramTube])
+	} else {
+		r.TubeRatio = math.Expm1(best[paramTube])
+	}
+	if free[paramLp] {
+		r.LpProfile = profile(m.value, best, top, paramLp, free, w[paramLp], b)
+	} else {
+		r.LpProfile = Profile{X: []float64{best[paramLp]}, Drop: []float64{0}, Slope: []float64{0}, at: []vector{best}}
 	}
 	level := distuv.ChiSquared{K: 1}.Quantile(o.Confidence) / 2
 	if !o.LpOnly {
 		r.DragProfile = profile(m.value, best, top, paramDrag, free, w[paramDrag], b)
 		r.DragPaS = interval(r.DragProfile, best[paramDrag], level)
-		for i := range d.Tracks {
-			r.Tracks = append(r.Tracks, m.single(i, best, b))
+		for i, t := range d.Tracks {
+			if t.WavenumberPerUm > 0 {
+				r.Tracks = append(r.Tracks, m.single(i, best, b))
+			}
+		}
+		if o.Network {
+			r.TubeProfile = profile(m.value, best, top, paramTube, free, w[paramTube], b)
+			r.TubeRmsUm = interval(r.TubeProfile, best[paramTube], level)
 		}
 	}
 	r.LpUm = interval(r.LpProfile, best[paramLp], level)
@@ -113,7 +147,7 @@ func Fit(d Data, o Options) (Result, error) {
 	}
 	for _, end := range []float64{r.LpUm.Low, r.LpUm.High} {
 		if end > 0 && !math.IsInf(end, 1) {
-			r.AtDragLimit = r.AtDragLimit || b.atDragLimit(r.LpProfile.dragAt(math.Log(end)))
+			r.AtDragLimit = r.AtDragLimit || b.atDragLimit(r.LpProfile.place(math.Log(end))[paramDrag])
 		}
 	}
 	r.PeakAtDragLimit = b.atDragLimit(best[paramDrag])
@@ -122,19 +156,30 @@ func Fit(d Data, o Options) (Result, error) {
 
 // bounds are how far each parameter may go.
 func (o Options) bounds() bounds {
-	return bounds{
+	b := bounds{
 		low:  vector{math.Log(o.LpLowUm), math.Log(o.DragLowPaS), -8 * o.NoiseScaleSD, -4 * o.MotionNoiseSD, 0},
 		high: vector{math.Log(o.LpHighUm), math.Log(o.DragHighPaS), 8 * o.NoiseScaleSD, 4 * o.MotionNoiseSD, mostTube},
 	}
+	if o.KnownLpUm > 0 && o.KnownLpSD == 0 {
+		b.low[paramLp] = math.Log(o.KnownLpUm)
+		b.high[paramLp] = b.low[paramLp]
+	}
+	if o.Network {
+		b.low[paramTube], b.high[paramTube] = math.Log(leastRmsUm), math.Log(mostRmsUm)
+	}
+	return b
 }
 
 // mostTube bounds ln(1 + x) of the tube: a million times as stiff as the first mode.
 const mostTube = 14
 
+// The tube's rms, µm: from nothing that a microscope sees to no tube at all.
+const leastRmsUm, mostRmsUm = 1e-3, 30
+
 // free says which parameters d can tell anything about.
 func (o Options) free(d Data) [params]bool {
-	return [params]bool{paramLp: true, paramDrag: true, paramNoise: true,
-		paramMotion: d.MotionNoise > 0 && d.ExposureS > 0 && o.MotionNoiseSD > 0, paramTube: o.Confined}
+	return [params]bool{paramLp: !(o.KnownLpUm > 0 && o.KnownLpSD == 0), paramDrag: true, paramNoise: true,
+		paramMotion: d.MotionNoise > 0 && d.ExposureS > 0 && o.MotionNoiseSD > 0, paramTube: o.Confined || o.Network}
 }
 
 // search climbs from the best place of a coarse grid, and from the best one at a drag well away from that, since blur and

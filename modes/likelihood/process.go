@@ -94,6 +94,77 @@ func (s sums) restricted() float64 {
 	return -0.5 * (float64(s.n-1)*math.Log(2*math.Pi) + s.logDet + math.Log(s.one) + q)
 }
 
+// mostColumns is how many columns a likelihood may be about.
+const mostColumns = 4
+
+// restrictedAbout is the restricted log-likelihood of y about an unknown combination of columns, one value per frame each: the log density of what is left
+// when they are taken out by generalised least squares, up to a constant free of p.
+func restrictedAbout(p Process, f Frames, y, noise []float64, columns [][]float64) float64 {
+	m := len(columns)
+	var (
+		ex     = newExposure(f.ExposureS / p.RelaxationS)
+		a      = ex.averaged
+		x, e   [mostColumns + 1]float64 // state estimates and innovations for y, then for every column
+		cross  [mostColumns + 1][mostColumns + 1]float64
+		px     = p.Variance
+		logDet = 0.0
+
+		lastDead, carry = math.NaN(), 0.0
+	)
+	for i, yi := range y {
+		if i > 0 {
+			dead := math.Max(0, f.TimesS[i]-f.TimesS[i-1]-f.ExposureS)
+			if !(math.Abs(dead-lastDead) <= 1e-9*lastDead) {
+				lastDead, carry = dead, math.Exp(-dead/p.RelaxationS)
+			}
+			for j := range m + 1 {
+				x[j] *= carry
+			}
+			px = p.Variance + carry*carry*(px-p.Variance)
+		}
+		innovation := a*a*px + p.Variance*ex.varMean + noise[i]
+		c := a*ex.decay*px + p.Variance*ex.cov
+		gain := c / innovation
+		e[0] = yi - a*x[0]
+		for j := range columns {
+			e[j+1] = columns[j][i] - a*x[j+1]
+		}
+		inv := 1 / innovation
+		for j := range m + 1 {
+			x[j] = ex.decay*x[j] + gain*e[j]
+			ej := e[j] * inv
+			for k := range j + 1 {
+				cross[j][k] += ej * e[k]
+			}
+		}
+		px = ex.decay*ex.decay*px + p.Variance*ex.varEnd - gain*c
+		logDet += math.Log(innovation)
+	}
+	// Cholesky of the columns' cross products; y's forward solution gives what they explain.
+	q := cross[0][0]
+	var l [mostColumns][mostColumns]float64
+	var z [mostColumns]float64
+	for j := range m {
+		z[j] = cross[j+1][0]
+		for k := range j + 1 {
+			s := cross[j+1][k+1]
+			for i := range k {
+				s -= l[j][i] * l[k][i]
+			}
+			if k < j {
+				l[j][k] = s / l[k][k]
+				z[j] -= l[j][k] * z[k]
+				continue
+			}
+			l[j][j] = math.Sqrt(math.Max(s, 1e-300))
+			logDet += 2 * math.Log(l[j][j])
+		}
+		z[j] /= l[j][j]
+		q -= z[j] * z[j]
+	}
+	return -0.5 * (float64(len(y)-m)*math.Log(2*math.Pi) + logDet + q)
+}
+
 // filter runs the exact filter over y and, alongside, over ones. The state is x at the end of an exposure;
 // the mean over the exposure enters only the measurement, so one number and its variance are carried on.
 func filter(p Process, f Frames, y, noise []float64) sums {

@@ -8,11 +8,11 @@ import (
 // Profile is the log-likelihood of one parameter, maximised over the others, at places around its
 // maximum. X ascends, in natural logarithms of the parameter's unit; Drop is how far the log-likelihood lies below
 // its maximum, 0 or more, and Slope its derivative. FlatLow and FlatHigh say that Drop no longer grows at that end
-// within the range searched. Drag is the logarithm of the drag (Pa·s) at each place.
+// within the range searched.
 type Profile struct {
 	X, Drop, Slope    []float64
-	Drag              []float64
 	FlatLow, FlatHigh bool
+	at                []vector // all parameters at each place
 }
 
 // At returns the drop at x by cubic Hermite interpolation, outside the places by their last values.
@@ -132,7 +132,7 @@ func profile(f func(vector) float64, best vector, top float64, which int, free [
 	var p Profile
 	add := func(at vector, drop, slope float64) {
 		p.X, p.Drop, p.Slope = append(p.X, at[which]), append(p.Drop, drop), append(p.Slope, slope)
-		p.Drag = append(p.Drag, at[paramDrag])
+		p.at = append(p.at, at)
 	}
 	var places []vector
 	var drops, slopesAt []float64
@@ -156,11 +156,14 @@ func profile(f func(vector) float64, best vector, top float64, which int, free [
 	return p
 }
 
-// dragAt returns the log drag of the place nearest to x.
-func (p Profile) dragAt(x float64) float64 {
+// place returns the parameters at the place nearest to x.
+func (p Profile) place(x float64) vector {
 	i := sort.SearchFloat64s(p.X, x)
 	if i == len(p.X) || i > 0 && x-p.X[i-1] < p.X[i]-x {
 		i--
 	}
-	return p.Drag[i]
+	return p.at[i]
 }
+
+// LpNear returns the persistence length, µm, at the place nearest to x.
+func (p Profile) LpNear(x float64) float64 { return math.Exp(p.place(x)[paramLp]) }

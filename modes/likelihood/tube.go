@@ -35,6 +35,57 @@ func Confinement(d Data, o Options, free Result) (Tube, error) {
 	return t, nil
 }
 
+// TubePerUm3 returns γ/kT, 1/µm³, of the harmonic tube in which an infinite filament of persistence length lpUm, µm, has the rms displacement rmsUm, µm, in
+// each transverse direction: ⟨y²⟩ = kT/(2√2 κ^¼ γ^¾).
+func TubePerUm3(rmsUm, lpUm float64) float64 {
+	return math.Pow(2*math.Sqrt2*math.Sqrt(math.Sqrt(lpUm))*rmsUm*rmsUm, -4.0/3)
+}
+
+// searchTube climbs from the best places of a coarse grid of stiffness, drag and tube.
+func searchTube(f func(vector) float64, free [params]bool, b bounds) (vector, float64) {
+	var at vector
+	top := math.Inf(-1)
+	for z := math.Log(1.5e-3); z < math.Log(2); z += 2.2 {
+		best, value := vector{}, math.Inf(-1)
+		for x := math.Log(0.5); x < math.Log(500); x += 1.4 {
+			for y := math.Log(0.01); y < math.Log(20); y += 0.9 {
+				place := b.clamp(vector{paramLp: x, paramDrag: z, paramTube: y})
+				if v := f(place); v > value {
+					best, value = place, v
+				}
+			}
+		}
+		if p, v := maximise(f, best, free, b); v > top {
+			at, top = p, v
+		}
+	}
+	return at, top
+}
+
+// polynomials are powers of time, one column a degree from 0 on, scaled to −1 to 1 over the movie.
+func polynomials(timesS []float64, degree int) [][]float64 {
+	first, last := timesS[0], timesS[len(timesS)-1]
+	out := make([][]float64, degree+1)
+	for _, t := range timesS {
+		x, p := 2*(t-first)/(last-first)-1, 1.0
+		for j := range out {
+			out[j] = append(out[j], p)
+			p *= x
+		}
+	}
+	return out
+}
+
+// FreeGain returns twice by how much the tube of a fit in a network is more likely than none.
+func FreeGain(r Result) float64 {
+	n := len(r.TubeProfile.Drop)
+	if n == 0 || !(r.TubeProfile.X[n-1] > math.Log(mostRmsUm)-0.01) {
+		// The profile ended far down before it came to no tube.
+		return 2 * profileDepth
+	}
+	return 2 * r.TubeProfile.Drop[n-1]
+}
+
 // intoTube climbs from the best free filament with a tube added, from weak and from strong ones.
 func intoTube(m *model, at vector, top float64, free [params]bool, b bounds) (vector, float64) {
 	best := at
