@@ -21,6 +21,7 @@ const (
 	FlagRolling         = "rolling"          // a bent filament shows mirrored shapes
 	FlagPinned          = "pinned"           // a place along the filament stays where it is
 	FlagProcessed       = "processed"        // the images are not as the camera took them
+	FlagLpHidden        = "lp_hidden"        // the tube hides the persistence length
 	FlagMethodsDisagree = "methods_disagree" // a classic estimate and the likelihood exclude each other
 	FlagProjection      = "projection"       // the chamber is too deep for planar theory
 )

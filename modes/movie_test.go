@@ -16,6 +16,7 @@ type filament struct {
 	noiseUm3                float64
 	curvaturePerUm          float64
 	tubeRmsUm               float64 // of a harmonic tube; 0: none
+	slides                  bool    // along the tube, freely
 	seed                    uint64
 }
 
@@ -29,6 +30,9 @@ func (f filament) series(t testing.TB) Series {
 		CurvaturePerUm: f.curvaturePerUm, WanderUm: 1, TurnRad: 1, Modes: 32}
 	if f.tubeRmsUm > 0 {
 		o.TubeStiffness = chain.TubeStiffness(f.tubeRmsUm, f.lpUm, o.TempK)
+	}
+	if f.slides {
+		o.WanderUm = math.Inf(1)
 	}
 	c, err := chain.NewChain(o)
 	if err != nil {

@@ -33,6 +33,8 @@ type Series struct {
 	// RadiusUm is the filament's radius, µm, ViscosityPaS the medium's viscosity, Pa·s, and HeightUm the height of the filament's axis over a wall, µm; 0
 	// where they are not known.
 	RadiusUm, ViscosityPaS, HeightUm float64
+	// KnownLpUm is a persistence length known from free filaments, µm, with its 95 % interval; 0 where there is none.
+	KnownLpUm, KnownLpLowUm, KnownLpHighUm float64
 	// Processed says that the images were denoised, resampled or compressed with loss, so that NoiseUm3 is not to be trusted.
 	Processed bool
 	// FreeEnds says whether both ends were seen.

@@ -67,8 +67,10 @@ type Result struct {
 	Tracks []TrackFit
 	// LpProfile and DragProfile are in ln µm and ln Pa·s.
 	LpProfile, DragProfile Profile
-	// TubeRmsUm is the tube's bulk rms, µm, and TubeProfile its profile in ln µm, in a network.
+	// TubeRmsUm is the tube's bulk rms, µm, in a network: the mean of its logarithm over the likelihood, which may have two peaks, a stiff
+	// filament in a narrow tube and a soft one in a wide. TubeProfile is its profile in ln µm, PeakTubeUm where it is highest.
 	TubeRmsUm   Interval
+	PeakTubeUm  float64
 	TubeProfile Profile
 	// AtDragLimit says that an end of the interval of Lp stands where the drag met the end of its range: the data alone do
 	// not give that end; PeakAtDragLimit that the peak stands there, where it means nothing.
@@ -114,7 +116,7 @@ func Fit(d Data, o Options) (Result, error) {
 		peak:          best,
 	}
 	if o.Network {
-		r.TubeRmsUm.Value = math.Exp(best[paramTube])
+		r.PeakTubeUm = math.Exp(best[paramTube])
 	} else {
 		r.TubeRatio = math.Expm1(best[paramTube])
 	}
@@ -132,10 +134,11 @@ func Fit(d Data, o Options) (Result, error) {
 				r.Tracks = append(r.Tracks, m.single(i, best, b))
 			}
 		}
-		if o.Network {
-			r.TubeProfile = profile(m.value, best, top, paramTube, free, w[paramTube], b)
-			r.TubeRmsUm = interval(r.TubeProfile, best[paramTube], level)
-		}
+	}
+	if o.Network {
+		r.TubeProfile = profile(m.value, best, top, paramTube, free, w[paramTube], b)
+		r.TubeRmsUm = interval(r.TubeProfile, best[paramTube], level)
+		r.TubeRmsUm.Value = math.Exp(r.TubeProfile.mean())
 	}
 	r.LpUm = interval(r.LpProfile, best[paramLp], level)
 	if curvature := -h[paramLp][paramLp]; curvature > 0 {

@@ -80,11 +80,11 @@ func (d Data) check() error {
 // per length in Pa·s and a temperature in K.
 func ModeProcess(wavenumberPerUm, lpUm, dragPaS, temperatureK float64) Process {
 	k2 := wavenumberPerUm * wavenumberPerUm
-	return held(lpUm*k2*k2, dragPaS, temperatureK)
+	return HeldProcess(lpUm*k2*k2, dragPaS, temperatureK)
 }
 
-// held is the process of a mode that a stiffness of kT·perUm3 holds: variance 1/perUm3.
-func held(perUm3, dragPaS, temperatureK float64) Process {
+// HeldProcess is the process of a mode that a stiffness of kT·perUm3 holds: variance 1/perUm3, µm³, and relaxation time ζ/(kT·perUm3), s.
+func HeldProcess(perUm3, dragPaS, temperatureK float64) Process {
 	v := 1 / perUm3
 	return Process{Variance: v, RelaxationS: dragPaS * v / (boltzmann * temperatureK * 1e18)}
 }
@@ -137,9 +137,9 @@ func newModel(d Data, o Options) *model {
 func (m *model) process(wavenumberPerUm float64, at vector) Process {
 	k4, lp := math.Pow(wavenumberPerUm, 4), math.Exp(at[paramLp])
 	if m.byRms {
-		return held(lp*k4+TubePerUm3(math.Exp(at[paramTube]), lp), math.Exp(at[paramDrag]), m.d.TemperatureK)
+		return HeldProcess(lp*k4+TubePerUm3(math.Exp(at[paramTube]), lp), math.Exp(at[paramDrag]), m.d.TemperatureK)
 	}
-	return held(lp*(k4+math.Expm1(at[paramTube])*m.first4), math.Exp(at[paramDrag]), m.d.TemperatureK)
+	return HeldProcess(lp*(k4+math.Expm1(at[paramTube])*m.first4), math.Exp(at[paramDrag]), m.d.TemperatureK)
 }
 
 // track returns the restricted log-likelihood of track i alone, the priors excluded.

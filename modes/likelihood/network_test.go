@@ -21,7 +21,7 @@ func inNetwork(lengthUm, lpUm, rmsUm, dragPaS float64, frames int, intervalS, ex
 		if k > 6.44 {
 			break
 		}
-		y := Simulate(held(lpUm*math.Pow(k, 4)+g, dragPaS, d.TemperatureK), d.Frames, rng)
+		y := Simulate(HeldProcess(lpUm*math.Pow(k, 4)+g, dragPaS, d.TemperatureK), d.Frames, rng)
 		r := make([]float64, frames)
 		for i := range r {
 			r[i] = noiseUm3 * math.Exp(k*k*0.13*0.13)
@@ -36,7 +36,7 @@ func inNetwork(lengthUm, lpUm, rmsUm, dragPaS float64, frames int, intervalS, ex
 // With the constant as the only column, the two filters are one.
 func TestRestrictedAboutConstant(t *testing.T) {
 	d := inNetwork(10, 17, 0.1, 3e-3, 50, 0.1, 0.03, 1e-4, rand.New(rand.NewPCG(1, 1)))
-	p := held(5, 3e-3, d.TemperatureK)
+	p := HeldProcess(5, 3e-3, d.TemperatureK)
 	tr := d.Tracks[3]
 	ones := make([]float64, 50)
 	for i := range ones {

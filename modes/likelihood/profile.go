@@ -38,6 +38,22 @@ func (p Profile) At(x float64) float64 {
 	return a*(1+2*t)*u*u + b*(1+2*u)*t*t + w*t*u*(u*p.Slope[i-1]-t*p.Slope[i])
 }
 
+// mean is the mean of x with the likelihood as its density, which lies between the peaks where there are two.
+func (p Profile) mean() float64 {
+	n := len(p.X)
+	if n < 2 {
+		return p.X[0]
+	}
+	const steps = 400
+	sum, first := 0.0, 0.0
+	for i := range steps {
+		x := p.X[0] + (p.X[n-1]-p.X[0])*(float64(i)+0.5)/steps
+		w := math.Exp(-p.At(x))
+		sum, first = sum+w, first+w*x
+	}
+	return first / sum
+}
+
 // crossing returns where the drop passes level on the way from the maximum at peak to lower (side -1) or higher (side
 // +1) values, or ±Inf where it does not.
 func (p Profile) crossing(peak, level float64, side int) float64 {

@@ -11,7 +11,7 @@ func confined(ratio float64, frames int, rng *rand.Rand) Data {
 	d := movie(10, 17, 2.4e-3, frames, 0.5, 0.03, 2e-4, 1, rng)
 	first := math.Pow(d.Tracks[0].WavenumberPerUm, 4)
 	for i, t := range d.Tracks {
-		p := held(17*(math.Pow(t.WavenumberPerUm, 4)+ratio*first), 2.4e-3, d.TemperatureK)
+		p := HeldProcess(17*(math.Pow(t.WavenumberPerUm, 4)+ratio*first), 2.4e-3, d.TemperatureK)
 		y := Simulate(p, d.Frames, rng)
 		for j := range y {
 			y[j] += math.Sqrt(t.NoiseVariance[j]) * rng.NormFloat64()
