@@ -41,6 +41,9 @@ persistence length. For every stack a folder OUT/NAME is written:
   contours.csv    the contours, µm, with the standard error of every point
   modes.csv, tangent.csv, summary.json and more
 
+Several stacks also get OUT/conditions.csv: all their filaments together, as one
+condition.
+
 Calibration that the file does not hold must be given. A stack whose results are
 there already, from the same file, settings and version, is not done again.`,
 		Example: `  wend measure movie.ome.tif --setting free
@@ -111,6 +114,9 @@ func measure(ctx context.Context, paths []string, request job.Request, o measure
 			fmt.Fprintf(stderr, "wend: %v\n", err)
 		}
 	}
+	if err := pool(paths, failures, o.out, stdout); err != nil {
+		return err
+	}
 	if len(failures) == 0 {
 		return nil
 	}
@@ -121,6 +127,33 @@ func measure(ctx context.Context, paths []string, request job.Request, o measure
 		}
 	}
 	return errSomeFailed
+}
+
+// pool writes conditions.csv for several stacks of one call, as one condition, and says what it holds.
+func pool(paths []string, failures map[string]error, out string, stdout io.Writer) error {
+	var filaments []job.Filament
+	stacks := 0
+	for _, p := range paths {
+		if failures[p] != nil {
+			continue
+		}
+		f, err := tables.ReadFilaments(filepath.Join(out, resultName(p)))
+		if err != nil {
+			return err
+		}
+		filaments, stacks = append(filaments, f...), stacks+1
+	}
+	if stacks < 2 {
+		return nil
+	}
+	rows := tables.PoolFilaments("", filaments, make([]string, len(filaments)))
+	if err := tables.WriteConditions(out, rows); err != nil {
+		return err
+	}
+	for _, row := range rows {
+		fmt.Fprintf(stdout, "%s\n", report.Population(row, stacks))
+	}
+	return nil
 }
 
 // measureOne measures one stack and writes its folder, unless that is done already.
