@@ -67,16 +67,6 @@ func (c accuracyCase) options(i int, seed uint64) movie.Options {
 	return o
 }
 
-// source shows a movie as frames to be traced.
-type source struct{ m *movie.Movie }
-
-func (s source) Frames() int { return s.m.Frames() }
-
-func (s source) ReadFrame(t int, dst *imaging.Frame) error {
-	s.m.Frame(t, dst)
-	return nil
-}
-
 // synthetic makes a movie and measures it.
 func synthetic(ctx context.Context, o movie.Options) (*score, error) {
 	m, err := movie.New(o)
@@ -85,7 +75,7 @@ func synthetic(ctx context.Context, o movie.Options) (*score, error) {
 	}
 	settings := job.Settings{PixelUm: o.PixelUm, IntervalS: o.IntervalS, ExposureS: o.ExposureS, TemperatureC: o.TemperatureC,
 		Setting: "free", Channel: 1, MinLengthUm: 2, LastFrame: o.Frames - 1, Gain: math.NaN(), Offset: math.NaN()}
-	r, err := job.Measure(ctx, source{m}, imaging.Info{MaxCount: 65535, SizeC: 1}, settings, 1, nil)
+	r, err := job.Measure(ctx, m, imaging.Info{MaxCount: 65535, SizeC: 1}, settings, 1, nil)
 	if err != nil {
 		return nil, err
 	}

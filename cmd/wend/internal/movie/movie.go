@@ -121,6 +121,12 @@ func (m *Movie) Expect(t int, dst *synth.Image) {
 	m.scene.Expect(lines, m.light[t], dst)
 }
 
+// ReadFrame is Frame, for whatever reads frames; it never fails.
+func (m *Movie) ReadFrame(t int, dst *imaging.Frame) error {
+	m.Frame(t, dst)
+	return nil
+}
+
 // Frame writes frame t, from 0, to dst, reusing its memory: counts from 0 to 65535. A
 // frame outside the movie panics.
 func (m *Movie) Frame(t int, dst *imaging.Frame) {
