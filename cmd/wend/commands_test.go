@@ -412,10 +412,10 @@ func TestHelpAndVersion(t *testing.T) {
 		t.Errorf("version: %q", stdout)
 	}
 	stdout, _ := must(t, exitDone, "--help")
-	if commands := newRootCommand().Commands(); len(commands) != 3 {
-		t.Errorf("%d commands, want 3", len(commands))
+	if commands := newRootCommand().Commands(); len(commands) != 4 {
+		t.Errorf("%d commands, want 4", len(commands))
 	}
-	for _, want := range []string{"measure", "look", "synth"} {
+	for _, want := range []string{"measure", "look", "check", "synth"} {
 		if !strings.Contains(stdout, "  "+want+" ") {
 			t.Errorf("help does not list %s:\n%s", want, stdout)
 		}

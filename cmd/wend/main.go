@@ -98,7 +98,7 @@ pictures and a report out. Lengths are µm, times s. For research, not for diagn
 	root.SetVersionTemplate("wend {{.Version}}\n")
 	root.CompletionOptions.DisableDefaultCmd = true
 	root.SetHelpCommand(&cobra.Command{Hidden: true})
-	root.AddCommand(newMeasureCommand(), newLookCommand(), newSynthCommand())
+	root.AddCommand(newMeasureCommand(), newLookCommand(), newCheckCommand(), newSynthCommand())
 	for _, c := range append(root.Commands(), root) {
 		c.SetFlagErrorFunc(func(cmd *cobra.Command, err error) error {
 			return errUse{fmt.Errorf("%w: see %s --help", err, cmd.CommandPath())}

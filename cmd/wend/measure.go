@@ -190,6 +190,9 @@ func measureOne(ctx context.Context, path string, request job.Request, o measure
 	if err := os.Remove(filepath.Join(dir, tables.SummaryFile)); err != nil && !errors.Is(err, fs.ErrNotExist) {
 		return err
 	}
+	if err := report.RemoveCheck(dir); err != nil {
+		return err
+	}
 	if err := report.Write(dir, result); err != nil {
 		return err
 	}

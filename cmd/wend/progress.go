@@ -33,6 +33,7 @@ type bar struct {
 	container *mpb.Progress
 	bar       *mpb.Bar
 	total     int
+	unit      string // what is counted; frames if empty
 	reported  time.Time
 	stopped   bool
 }
@@ -48,14 +49,17 @@ func (p progress) stack(number, count int, path string) *bar {
 
 func (b *bar) start(frames int) {
 	b.total, b.reported = frames, time.Now()
+	if b.unit == "" {
+		b.unit = "frames"
+	}
 	if !b.terminal {
-		fmt.Fprintf(b.out, "%s: %d frames\n", b.label, frames)
+		fmt.Fprintf(b.out, "%s: %d %s\n", b.label, frames, b.unit)
 		return
 	}
 	b.container = mpb.New(mpb.WithOutput(b.out), mpb.WithWidth(40))
 	b.bar = b.container.AddBar(int64(frames), mpb.BarRemoveOnComplete(),
 		mpb.PrependDecorators(decor.Name(b.label+" ")),
-		mpb.AppendDecorators(decor.CountersNoUnit("%d/%d frames"), decor.AverageETA(decor.ET_STYLE_GO, decor.WC{W: 8})))
+		mpb.AppendDecorators(decor.CountersNoUnit("%d/%d "+b.unit), decor.AverageETA(decor.ET_STYLE_GO, decor.WC{W: 8})))
 }
 
 // set says that done frames are traced. Calls must not overlap.
@@ -67,7 +71,7 @@ func (b *bar) set(done int) {
 		b.bar.SetCurrent(int64(done))
 	case time.Since(b.reported) > every:
 		b.reported = time.Now()
-		fmt.Fprintf(b.out, "%s: %d of %d frames\n", b.label, done, b.total)
+		fmt.Fprintf(b.out, "%s: %d of %d %s\n", b.label, done, b.total, b.unit)
 	}
 }
 

@@ -39,6 +39,7 @@ func Write(dir string, r *job.Result) error {
 	o, absent := overlay(r)
 	p := newPage(r)
 	p.Style = template.CSS(style)
+	p.CheckPlace = template.HTML(checkStart + checkEnd)
 	if o.Width > 0 && o.Height > 0 {
 		var err error
 		if p.Picture, err = pictureSVG(o); err != nil {

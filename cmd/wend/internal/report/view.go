@@ -14,6 +14,7 @@ import (
 
 // page is what the template shows.
 type page struct {
+	CheckPlace                                 template.HTML // what a check fills later
 	Name, File, Version, SHA256, Ridge, Camera string
 	Style                                      template.CSS
 	Overall                                    string

@@ -40,3 +40,17 @@ func WriteFile(dir, name string, write func(w io.Writer) error) (err error) {
 	}
 	return os.Rename(f.Name(), filepath.Join(dir, name))
 }
+
+// WriteRows writes a table of its own columns, already text, into dir; [Number] is how a number stands in it.
+func WriteRows(dir, name string, columns []string, rows [][]string) error {
+	return WriteFile(dir, name, func(w io.Writer) error {
+		out := newRowWriter(w, columns)
+		for _, row := range rows {
+			out.write(row...)
+		}
+		return out.flush()
+	})
+}
+
+// Number is a result with the digits that the tables keep; empty for one that is not known.
+func Number(v float64) string { return digits(v, digitsResult) }
