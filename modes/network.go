@@ -286,6 +286,14 @@ func (r *Result) tube(in inTube, fit likelihood.Result, t tubeTheory, s Series) 
 	}
 	r.add(QuantityDrag, MethodLikelihood, fit.DragPaS.Value, fit.DragPaS.Low, fit.DragPaS.High, "transverse drag per length, fitted as one number for all modes")
 	r.add(QuantitySlowest, MethodLikelihood, t.slowestS(), math.NaN(), math.NaN(), "relaxation time of the tube, ζ/γ")
+	lp := fit.PeakLpUm
+	switch {
+	case s.KnownLpUm > 0:
+		lp = s.KnownLpUm
+	case r.LpUm > 0:
+		lp = r.LpUm
+	}
+	r.meshes(w, lp, in.lengthUm, s)
 	r.Tube.Places = in.places(t)
 	r.Tube.Spectrum = in.spectrum(t)
 }
