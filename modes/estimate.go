@@ -9,7 +9,8 @@ type Estimate struct {
 }
 
 // Mode is one cosine mode of the tangent angle over all frames of a filament. Amplitudes are
-// in µm^½ (rad·√µm), variances in µm (rad²·µm).
+// in µm^½ (rad·√µm), variances in µm (rad²·µm). For a filament in a network it is a normal mode of a rod in a tube instead, numbers −1 and 0 being the shift
+// and the turn, with amplitudes in µm^3/2, variances in µm³ and ThermalVariance free of noise and blur.
 type Mode struct {
 	Mode                                     int
 	WavelengthUm                             float64

@@ -282,7 +282,7 @@ func (r *Result) tube(in inTube, fit likelihood.Result, t tubeTheory, s Series) 
 	}
 	if method == MethodLikelihood {
 		r.add(QuantityTubeStiffness, method, stiff(w.Value), stiff(w.High), stiff(w.Low), "γ of the energy ½γy² per length; limits along those of the width")
-		r.add(QuantityDeflection, method, deflection(w.Value), deflection(w.Low), deflection(w.High), "(κ/γ)^¼; limits along those of the width")
+		r.add(QuantityDeflection, method, deflection(w.Value), math.Min(deflection(w.Low), deflection(w.High)), math.Max(deflection(w.Low), deflection(w.High)), "(κ/γ)^¼; limits along those of the width")
 	}
 	r.add(QuantityDrag, MethodLikelihood, fit.DragPaS.Value, fit.DragPaS.Low, fit.DragPaS.High, "transverse drag per length, fitted as one number for all modes")
 	r.add(QuantitySlowest, MethodLikelihood, t.slowestS(), math.NaN(), math.NaN(), "relaxation time of the tube, ζ/γ")
@@ -296,6 +296,17 @@ func (r *Result) tube(in inTube, fit likelihood.Result, t tubeTheory, s Series) 
 	r.meshes(w, lp, in.lengthUm, s)
 	r.Tube.Places = in.places(t)
 	r.Tube.Spectrum = in.spectrum(t)
+	for m, row := range r.Tube.Spectrum {
+		p := t.process(row.WavenumberPerUm)
+		nan := math.NaN()
+		mode := Mode{Mode: m - rigidModes + 1, WavelengthUm: nan, MeanAmplitude: mean(in.data.Tracks[m].Amplitude), Variance: row.Variance,
+			NoiseVariance: row.NoiseVariance, ThermalVariance: row.TubeVariance, BlurFactor: row.BlurFactor, LpUm: nan, LpLowUm: nan, LpHighUm: nan,
+			RelaxationS: p.RelaxationS, Shapes: IndependentShapes(in.frames.TimesS, p.RelaxationS), Used: true}
+		if row.WavenumberPerUm > 0 {
+			mode.WavelengthUm = 2 * math.Pi / row.WavenumberPerUm
+		}
+		r.Modes = append(r.Modes, mode)
+	}
 }
 
 // spectrum compares the amplitudes with theory, free and in the tube.

@@ -19,7 +19,7 @@ type Series struct {
 	MotionNoise float64
 	// PSFUm is the standard deviation of the line's profile, µm.
 	PSFUm float64
-	// LengthUm is the contour length, one for all frames.
+	// LengthUm is the contour length, one for all frames: that of the curves without what noise adds to them.
 	LengthUm float64
 	// LengthSDUm is the scatter of the measured lengths over frames, and LengthSEUm the
 	// standard error predicted for one frame's.
@@ -35,6 +35,9 @@ type Series struct {
 	RadiusUm, ViscosityPaS, HeightUm float64
 	// KnownLpUm is a persistence length known from free filaments, µm, with its 95 % interval; 0 where there is none.
 	KnownLpUm, KnownLpLowUm, KnownLpHighUm float64
+	// ActinMgPerMl is the concentration of the actin network around the filament, mg/mL, MeshPrefactor and MeshFiniteTerm the numbers to use in the relation between
+	// tube and mesh, see [MeshOptions]; 0 where nothing is given.
+	ActinMgPerMl, MeshPrefactor, MeshFiniteTerm float64
 	// Processed says that the images were denoised, resampled or compressed with loss, so that NoiseUm3 is not to be trusted.
 	Processed bool
 	// FreeEnds says whether both ends were seen.

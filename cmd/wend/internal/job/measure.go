@@ -183,7 +183,11 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 	series := SeriesOf(f, timesS, s, optics.LineWidthUm)
 	o := modes.DefaultOptions()
 	o.ResolutionPSF = optics.ResolvedUm / optics.LineWidthUm
-	out := Filament{Filament: f, Result: modes.Analyse(series, o),
+	analyse := modes.Analyse
+	if s.Setting == "network" {
+		analyse = modes.AnalyseNetwork
+	}
+	out := Filament{Filament: f, Result: analyse(series, o),
 		FramesUsed: len(series.Curves)}
 	var lengths, snr, photons, background, width, errors []float64
 	ends := [2]map[trace.End]int{{}, {}}
@@ -225,7 +229,9 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 func SeriesOf(f trace.Filament, timesS []float64, s Settings, widthUm float64) modes.Series {
 	out := modes.Series{PSFUm: widthUm, MotionNoise: trace.MotionNoise, IntervalS: s.IntervalS, ExposureS: s.ExposureS,
 		TemperatureK: s.TemperatureC + chain.ZeroCelsius, ChamberUm: s.ChamberUm, RadiusUm: s.RadiusNm / 1000,
-		ViscosityPaS: s.ViscosityMPas / 1000, HeightUm: s.HeightUm, FreeEnds: true}
+		ViscosityPaS: s.ViscosityMPas / 1000, HeightUm: s.HeightUm,
+		KnownLpUm: s.KnownLpUm, KnownLpLowUm: s.KnownLpLowUm, KnownLpHighUm: s.KnownLpHighUm, ActinMgPerMl: s.ActinMgPerMl,
+		MeshPrefactor: s.MeshPrefactor, MeshFiniteTerm: s.MeshFiniteTerm, FreeEnds: true}
 	var lengths, errors []float64
 	for _, c := range f.Contours {
 		if !c.Used() {

@@ -29,11 +29,24 @@ type Request struct {
 // filament over the chamber's wall. NaN in a Request and 0 in Settings stand for what is not known.
 type Sample struct {
 	ChamberUm, RadiusNm, ViscosityMPas, HeightUm float64
+	// For a filament in a network: a persistence length known from free ones with its interval, the concentration of an actin network, and the
+	// prefactor and the finite-length term of the relation between tube and mesh.
+	KnownLpUm, KnownLpLowUm, KnownLpHighUm, ActinMgPerMl, MeshPrefactor, MeshFiniteTerm float64
+}
+
+// unknownSample is NaN throughout.
+func unknownSample() (s Sample) {
+	for _, v := range s.values() {
+		*v.value = math.NaN()
+	}
+	return s
 }
 
 // values are the sample's numbers with their keys in a summary, in a fixed order.
 func (s *Sample) values() []sampleValue {
-	return []sampleValue{{"chamber_um", &s.ChamberUm}, {"radius_nm", &s.RadiusNm}, {"viscosity_mpas", &s.ViscosityMPas}, {"height_um", &s.HeightUm}}
+	return []sampleValue{{"chamber_um", &s.ChamberUm}, {"radius_nm", &s.RadiusNm}, {"viscosity_mpas", &s.ViscosityMPas}, {"height_um", &s.HeightUm},
+		{"known_lp_um", &s.KnownLpUm}, {"known_lp_low_um", &s.KnownLpLowUm}, {"known_lp_high_um", &s.KnownLpHighUm}, {"actin_mg_ml", &s.ActinMgPerMl},
+		{"mesh_prefactor", &s.MeshPrefactor}, {"mesh_finite_term", &s.MeshFiniteTerm}}
 }
 
 type sampleValue struct {
@@ -44,7 +57,7 @@ type sampleValue struct {
 // NewRequest asks for nothing: every value comes from the file.
 func NewRequest() Request {
 	nan := math.NaN()
-	return Request{PixelUm: nan, IntervalS: nan, ExposureS: nan, TemperatureC: nan, MinLengthUm: nan, Sample: Sample{nan, nan, nan, nan},
+	return Request{PixelUm: nan, IntervalS: nan, ExposureS: nan, TemperatureC: nan, MinLengthUm: nan, Sample: unknownSample(),
 		LastFrame: -1, Gain: nan, Offset: nan}
 }
 
@@ -74,6 +87,12 @@ func (r Request) Check() error {
 		{"--radius-nm", r.RadiusNm, r.RadiusNm > 0 && r.RadiusNm < 1000, "the filament's radius in nm, above 0 and below 1000"},
 		{"--viscosity-mpas", r.ViscosityMPas, r.ViscosityMPas > 0, "the medium's viscosity in mPa·s, above 0"},
 		{"--height-um", r.HeightUm, r.HeightUm > 0, "the filament's height over the wall in µm, above 0"},
+		{"--known-lp-um", r.KnownLpUm, r.KnownLpUm > 0, "a persistence length in µm, above 0"},
+		{"--known-lp-low-um", r.KnownLpLowUm, r.KnownLpLowUm > 0, "the lower end of its 95 % interval in µm, above 0"},
+		{"--known-lp-high-um", r.KnownLpHighUm, r.KnownLpHighUm > 0, "the upper end of its 95 % interval in µm, above 0"},
+		{"--actin-mg-ml", r.ActinMgPerMl, r.ActinMgPerMl > 0, "the concentration of the network in mg/mL, above 0"},
+		{"--mesh-prefactor", r.MeshPrefactor, r.MeshPrefactor > 0, "the prefactor of rms = A·ξ^(6/5)·Lp^(-1/5), above 0"},
+		{"--mesh-finite-term", r.MeshFiniteTerm, r.MeshFiniteTerm > 0, "the coefficient of ξ²/L, above 0"},
 		{"--min-length-um", r.MinLengthUm, r.MinLengthUm >= 0.5, "µm, 0.5 or more"},
 		{"--gain", r.Gain, r.Gain > 0, "counts per photoelectron, above 0"},
 		{"--offset", r.Offset, !math.IsInf(r.Offset, 0), "counts without light"},
@@ -83,13 +102,27 @@ func (r Request) Check() error {
 		}
 	}
 	switch r.Setting {
-	case "free":
+	case "free", "network":
 	case "":
-		return usage("--setting is missing: pass --setting free for filaments that fluctuate freely in a thin chamber")
-	case "network", "adsorbed":
-		return usage("--setting %s: this version measures free filaments only (--setting free)", r.Setting)
+		return usage("--setting is missing: pass --setting free for filaments that fluctuate freely in a thin chamber, --setting network for one labelled filament among unlabelled neighbours")
+	case "adsorbed":
+		return usage("--setting %s: this version measures moving filaments only (--setting free or network)", r.Setting)
 	default:
-		return usage("--setting %q, want free", r.Setting)
+		return usage("--setting %q, want free or network", r.Setting)
+	}
+	if r.Setting != "network" {
+		for _, v := range r.Sample.values()[4:] {
+			if !math.IsNaN(*v.value) {
+				return usage("--%s is for --setting network", strings.ReplaceAll(v.key, "_", "-"))
+			}
+		}
+	}
+	if math.IsNaN(r.KnownLpUm) && !(math.IsNaN(r.KnownLpLowUm) && math.IsNaN(r.KnownLpHighUm)) ||
+		math.IsNaN(r.KnownLpLowUm) != math.IsNaN(r.KnownLpHighUm) {
+		return usage("--known-lp-low-um and --known-lp-high-um go together, and with --known-lp-um")
+	}
+	if r.KnownLpLowUm >= r.KnownLpUm || r.KnownLpHighUm <= r.KnownLpUm {
+		return usage("--known-lp-um %g, want it between --known-lp-low-um %g and --known-lp-high-um %g", r.KnownLpUm, r.KnownLpLowUm, r.KnownLpHighUm)
 	}
 	if r.Channel < 0 {
 		return usage("--channel %d, want 1 or more", r.Channel)

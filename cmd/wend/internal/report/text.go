@@ -102,19 +102,21 @@ func ofAll(n, all int) string {
 
 // quantityNames are the words for the quantities of estimates.csv, with the unit.
 var quantityNames = map[string]string{
-	"lp_um":                   "persistence length (µm)",
-	"bending_rigidity_N_m2":   "bending rigidity (N·m²)",
-	"drag_Pa_s":               "transverse drag per length (Pa·s)",
-	"youngs_modulus_Pa":       "Young's modulus (Pa)",
-	"drag_expected_Pa_s":      "drag to expect (Pa·s)",
-	"slowest_s":               "relaxation time of the slowest mode (s)",
-	"tube_rms_um":             "tube rms (µm)",
-	"tube_diameter_um":        "tube diameter (µm)",
-	"tube_stiffness_N_per_m2": "tube stiffness (N/m²)",
-	"deflection_um":           "deflection length (µm)",
-	"mesh_um":                 "mesh size (µm)",
-	"sliding_um2_per_s":       "sliding diffusion (µm²/s)",
-	"disengagement_s":         "disengagement time (s)",
+	"lp_um":                        "persistence length (µm)",
+	"bending_rigidity_N_m2":        "bending rigidity (N·m²)",
+	"drag_Pa_s":                    "transverse drag per length (Pa·s)",
+	"youngs_modulus_Pa":            "Young's modulus (Pa)",
+	"drag_expected_Pa_s":           "drag to expect (Pa·s)",
+	"slowest_s":                    "relaxation time of the slowest mode (s)",
+	"tube_rms_um":                  "tube rms (µm)",
+	"tube_diameter_um":             "tube diameter (µm)",
+	"tube_stiffness_N_per_m2":      "tube stiffness (N/m²)",
+	"deflection_um":                "deflection length (µm)",
+	"mesh_um":                      "mesh size (µm)",
+	"displacement_excess_kurtosis": "excess kurtosis of the displacement",
+	"transverse_exponent":          "exponent of the transverse displacement",
+	"sliding_um2_per_s":            "sliding diffusion (µm²/s)",
+	"disengagement_s":              "disengagement time (s)",
 }
 
 func quantityName(q string) string {

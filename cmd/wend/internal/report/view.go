@@ -301,7 +301,9 @@ func settings(r *job.Result) []settingRow {
 	for _, v := range []struct {
 		name string
 		tables.SettingValue[*float64]
-	}{{"chamber depth (µm)", s.ChamberUm}, {"filament radius (nm)", s.RadiusNm}, {"viscosity (mPa·s)", s.ViscosityMPas}, {"height over the wall (µm)", s.HeightUm}} {
+	}{{"chamber depth (µm)", s.ChamberUm}, {"filament radius (nm)", s.RadiusNm}, {"viscosity (mPa·s)", s.ViscosityMPas}, {"height over the wall (µm)", s.HeightUm}, {"persistence length known (µm)", s.KnownLpUm},
+		{"its lower limit (µm)", s.KnownLpLowUm}, {"its upper limit (µm)", s.KnownLpHighUm}, {"actin around it (mg/mL)", s.ActinMgPerMl},
+		{"prefactor of tube and mesh", s.MeshPrefactor}, {"finite-length term of tube and mesh", s.MeshFiniteTerm}} {
 		if v.Value != nil && *v.Value > 0 {
 			rows = append(rows, settingRow{v.name, plain(*v.Value), v.Source})
 		}

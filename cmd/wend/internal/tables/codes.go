@@ -74,6 +74,7 @@ var codes = []Code{
 	{KindFlag, "drag_limit", "An end of the interval rests on the range allowed for the drag, so that the interval may be too narrow on that side; a shorter frame interval lets the movie itself say what the drag is."},
 	{KindFlag, "length_scatter", "The measured length scatters more than the light explains: in some frames the trace runs on into a spot or noise, or breaks off. Look at the frames; the persistence length may be too small."},
 	{KindFlag, "methods_disagree", "A classic estimate and the recommended one exclude each other (estimates.csv). Where it is tangent or distance, mostly the filament is bent by itself, which they read as flexibility, or its length is off; where it is modes, look at the mode spectrum for the one that stands out."},
+	{KindFlag, "lp_hidden", "The tube hides the filament's stiffness: too few modes lie above both the tube and the noise. The width is given; pass a persistence length known from free filaments (--known-lp-um) to narrow it."},
 	{KindFlag, "fit", "A fit did not converge, and its estimate is left out."},
 
 	{KindMethod, "likelihood", "Exact likelihood of the bending modes over time, with exposure, noise, drag and intrinsic shape taken into account: the recommended estimate."},
@@ -82,6 +83,12 @@ var codes = []Code{
 	{KindMethod, "distance", "Mean-square distance between the ends, against the contour length."},
 	{KindMethod, "distribution", "Distribution of the distance between the ends over the frames, of a filament shorter than its persistence length."},
 	{KindMethod, "known", "A stiffness that the user gave, measured elsewhere; not an estimate from this movie."},
+	{KindMethod, "interior", "Places of the filament that lie more than three deflection lengths from its ends."},
+	{KindMethod, "ends", "Middle of the two ends along the tube's axis, frame by frame, with the covariance estimator for diffusion under noise."},
+	{KindMethod, "lags", "Mean-square displacement against lag time."},
+	{KindMethod, "hinsch_2007", "Mesh size from rms = 0.32 ξ^(6/5) Lp^(-1/5) (Hinsch, Wilhelm and Frey 2007): long filaments, tightly entangled; the recommended relation. ξ = √(3/ρ)."},
+	{KindMethod, "hinsch_2007_finite", "The same with a term for the filament's finite length, 0.31 ξ^(6/5) Lp^(-1/5) + 0.59 ξ²/L (coefficients from memory)."},
+	{KindMethod, "concentration", "Mesh size expected from the concentration that was given; not an estimate from this movie."},
 	{KindMethod, "theory", "Not an estimate: what theory expects for the sample as it was described."},
 	{KindMethod, "bound", "The movie gives only a lower bound: lp_um is empty and lp_high_um is inf."},
 

@@ -53,6 +53,10 @@ func Read(dir string) (*job.Result, error) {
 	if err != nil {
 		return nil, err
 	}
+	places, lags, err := readTubes(dir)
+	if err != nil {
+		return nil, err
+	}
 	byID := make(map[int]trace.Filament, len(traces))
 	for _, t := range traces {
 		byID[t.ID] = t
@@ -65,6 +69,7 @@ func Read(dir string) (*job.Result, error) {
 		}
 		f.Filament = t
 		f.Estimates, f.Modes, f.Tangent = estimates[f.ID], modeRows[f.ID], tangent[f.ID]
+		f.Tube.Places, f.Tube.Lags = places[f.ID], lags[f.ID]
 	}
 	return r, nil
 }
@@ -82,6 +87,8 @@ func ReadFilaments(dir string) ([]job.Filament, error) {
 		f.PSFUm, f.LocalisationUm = g.float("psf_nm")/1000, g.float("localisation_nm")/1000
 		f.Shapes, f.Thermal, f.Confinement = g.float("shapes"), g.text("thermal"), g.text("confinement")
 		f.LpUm, f.LpLowUm, f.LpHighUm, f.LpFrom = g.float("lp_um"), g.float("lp_low_um"), g.float("lp_high_um"), g.text("lp_from")
+		f.Tube.RmsUm, f.Tube.RmsLowUm, f.Tube.RmsHighUm = g.float("tube_rms_um"), g.float("tube_rms_low_um"), g.float("tube_rms_high_um")
+		f.Tube.MeshUm, f.Tube.MeshLowUm, f.Tube.MeshHighUm, f.Tube.MeshFrom = g.float("mesh_um"), g.float("mesh_low_um"), g.float("mesh_high_um"), g.text("mesh_from")
 		f.TangentFitLpUm, f.TangentFitIntercept = math.NaN(), math.NaN()
 		if flags := g.text("flags"); flags != "" {
 			f.Flags = strings.Split(flags, ";")
@@ -205,6 +212,26 @@ func ReadTangent(dir string) (map[int][]modes.Separation, error) {
 		id := g.int("filament")
 		all[id] = append(all[id], modes.Separation{SeparationUm: g.float("separation_um"), CosMean: g.float("cos_mean"), CosLow: g.float("cos_low"),
 			CosHigh: g.float("cos_high"), Pairs: g.int("pairs"), Used: g.bool("used")})
+		return nil
+	})
+}
+
+// readTubes reads tube.csv and lags.csv.
+func readTubes(dir string) (places map[int][]modes.TubePlace, lags map[int][]modes.Lag, err error) {
+	places, lags = map[int][]modes.TubePlace{}, map[int][]modes.Lag{}
+	err = eachRow(dir, TubeFile, tubeColumns, func(g *getter) error {
+		id := g.int("filament")
+		places[id] = append(places[id], modes.TubePlace{SUm: g.float("s_um"), RmsUm: g.float("rms_um"), RmsLowUm: g.float("rms_low_um"),
+			RmsHighUm: g.float("rms_high_um"), NoiseUm: g.float("noise_um")})
+		return nil
+	})
+	if err != nil {
+		return nil, nil, err
+	}
+	return places, lags, eachRow(dir, LagsFile, lagColumns, func(g *getter) error {
+		id := g.int("filament")
+		lags[id] = append(lags[id], modes.Lag{LagS: g.float("lag_s"), TransverseMSDUm2: g.float("transverse_msd_um2"),
+			LongitudinalMSDUm2: g.float("longitudinal_msd_um2"), Pairs: g.int("pairs")})
 		return nil
 	})
 }

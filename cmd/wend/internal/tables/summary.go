@@ -63,6 +63,12 @@ type SettingsSummary struct {
 	RadiusNm       SettingValue[*float64] `json:"radius_nm"`
 	ViscosityMPas  SettingValue[*float64] `json:"viscosity_mpas"`
 	HeightUm       SettingValue[*float64] `json:"height_um"`
+	KnownLpUm      SettingValue[*float64] `json:"known_lp_um"`
+	KnownLpLowUm   SettingValue[*float64] `json:"known_lp_low_um"`
+	KnownLpHighUm  SettingValue[*float64] `json:"known_lp_high_um"`
+	ActinMgPerMl   SettingValue[*float64] `json:"actin_mg_ml"`
+	MeshPrefactor  SettingValue[*float64] `json:"mesh_prefactor"`
+	MeshFiniteTerm SettingValue[*float64] `json:"mesh_finite_term"`
 	MinLengthUm    SettingValue[*float64] `json:"min_length_um"`
 	FirstFrame     SettingValue[int]      `json:"first_frame"`
 	LastFrame      SettingValue[int]      `json:"last_frame"`
@@ -147,8 +153,9 @@ func Summarise(r *job.Result) Summary {
 			ExposureS: float("exposure_s", s.ExposureS), TemperatureC: float("temperature_c", s.TemperatureC),
 			Setting: SettingValue[string]{s.Setting, source("setting")}, Channel: SettingValue[int]{s.Channel, source("channel")},
 			ChamberUm: float("chamber_um", s.ChamberUm), RadiusNm: float("radius_nm", s.RadiusNm),
-			ViscosityMPas: float("viscosity_mpas", s.ViscosityMPas), HeightUm: float("height_um", s.HeightUm), MinLengthUm: float("min_length_um", s.MinLengthUm),
-			FirstFrame: SettingValue[int]{s.FirstFrame, source("first_frame")}, LastFrame: SettingValue[int]{s.LastFrame, source("last_frame")},
+			ViscosityMPas: float("viscosity_mpas", s.ViscosityMPas), HeightUm: float("height_um", s.HeightUm), KnownLpUm: float("known_lp_um", s.KnownLpUm), KnownLpLowUm: float("known_lp_low_um", s.KnownLpLowUm), KnownLpHighUm: float("known_lp_high_um", s.KnownLpHighUm), ActinMgPerMl: float("actin_mg_ml", s.ActinMgPerMl), MeshPrefactor: float("mesh_prefactor", s.MeshPrefactor), MeshFiniteTerm: float("mesh_finite_term", s.MeshFiniteTerm),
+			MinLengthUm: float("min_length_um", s.MinLengthUm),
+			FirstFrame:  SettingValue[int]{s.FirstFrame, source("first_frame")}, LastFrame: SettingValue[int]{s.LastFrame, source("last_frame")},
 			Gain: float("gain", s.Gain), Offset: float("offset", s.Offset),
 			ReadableFrames: SettingValue[bool]{s.ReadableFrames, source("readable_frames")},
 		},
@@ -201,11 +208,13 @@ func (s *Summary) fill(r *job.Result) {
 	r.Settings = job.Settings{PixelUm: value(set.PixelUm.Value), IntervalS: value(set.IntervalS.Value), ExposureS: value(set.ExposureS.Value),
 		TemperatureC: value(set.TemperatureC.Value), Setting: set.Setting.Value, Channel: set.Channel.Value,
 		Sample: job.Sample{ChamberUm: value(set.ChamberUm.Value), RadiusNm: value(set.RadiusNm.Value), ViscosityMPas: value(set.ViscosityMPas.Value),
-			HeightUm: value(set.HeightUm.Value)}, MinLengthUm: value(set.MinLengthUm.Value), FirstFrame: set.FirstFrame.Value,
+			HeightUm: value(set.HeightUm.Value), KnownLpUm: value(set.KnownLpUm.Value), KnownLpLowUm: value(set.KnownLpLowUm.Value), KnownLpHighUm: value(set.KnownLpHighUm.Value), ActinMgPerMl: value(set.ActinMgPerMl.Value), MeshPrefactor: value(set.MeshPrefactor.Value), MeshFiniteTerm: value(set.MeshFiniteTerm.Value)},
+		MinLengthUm: value(set.MinLengthUm.Value), FirstFrame: set.FirstFrame.Value,
 		LastFrame: set.LastFrame.Value, Gain: value(set.Gain.Value), Offset: value(set.Offset.Value), ReadableFrames: set.ReadableFrames.Value,
 		Sources: map[string]string{"pixel_um": set.PixelUm.Source, "interval_s": set.IntervalS.Source, "exposure_s": set.ExposureS.Source,
 			"temperature_c": set.TemperatureC.Source, "setting": set.Setting.Source, "channel": set.Channel.Source,
 			"chamber_um": set.ChamberUm.Source, "radius_nm": set.RadiusNm.Source, "viscosity_mpas": set.ViscosityMPas.Source, "height_um": set.HeightUm.Source,
+			"known_lp_um": set.KnownLpUm.Source, "known_lp_low_um": set.KnownLpLowUm.Source, "known_lp_high_um": set.KnownLpHighUm.Source, "actin_mg_ml": set.ActinMgPerMl.Source, "mesh_prefactor": set.MeshPrefactor.Source, "mesh_finite_term": set.MeshFiniteTerm.Source,
 			"min_length_um": set.MinLengthUm.Source, "first_frame": set.FirstFrame.Source, "last_frame": set.LastFrame.Source,
 			"gain": set.Gain.Source, "offset": set.Offset.Source, "readable_frames": set.ReadableFrames.Source}}
 	r.Camera = imaging.Camera{GainCounts: value(s.Camera.GainCounts), OffsetCounts: value(s.Camera.OffsetCounts),

@@ -35,8 +35,8 @@ func Write(dir string, r *job.Result) error {
 		{ContoursFile, contourColumns, writeContours},
 		{ModesFile, modeColumns, writeModes},
 		{TangentFile, tangentColumns, writeTangent},
-		{TubeFile, tubeColumns, func(*rowWriter, *job.Result) {}},
-		{LagsFile, lagColumns, func(*rowWriter, *job.Result) {}},
+		{TubeFile, tubeColumns, writeTube},
+		{LagsFile, lagColumns, writeLags},
 	} {
 		err := WriteFile(dir, table.name, func(w io.Writer) error {
 			out := newRowWriter(w, table.columns)
@@ -62,7 +62,9 @@ func writeFilaments(out *rowWriter, r *job.Result) {
 			fixed(f.PSFUm*1000, trace.DecimalsErrorNm), fixed(f.LocalisationUm*1000, trace.DecimalsErrorNm),
 			digits(f.Shapes, digitsResult), f.Thermal, f.Confinement,
 			digits(f.LpUm, digitsResult), digits(f.LpLowUm, digitsResult), digits(f.LpHighUm, digitsResult), f.LpFrom,
-			"", "", "", "", "", "", "", strings.Join(f.Flags, ";"))
+			digits(f.Tube.RmsUm, digitsResult), digits(f.Tube.RmsLowUm, digitsResult), digits(f.Tube.RmsHighUm, digitsResult),
+			digits(f.Tube.MeshUm, digitsResult), digits(f.Tube.MeshLowUm, digitsResult), digits(f.Tube.MeshHighUm, digitsResult), f.Tube.MeshFrom,
+			strings.Join(f.Flags, ";"))
 	}
 }
 
@@ -124,6 +126,24 @@ func writeTangent(out *rowWriter, r *job.Result) {
 		for _, s := range f.Tangent {
 			out.write(strconv.Itoa(f.ID), digits(s.SeparationUm, digitsResult), fixed(s.CosMean, decimalsCos),
 				fixed(s.CosLow, decimalsCos), fixed(s.CosHigh, decimalsCos), strconv.Itoa(s.Pairs), flag(s.Used))
+		}
+	}
+}
+
+func writeTube(out *rowWriter, r *job.Result) {
+	d := func(v float64) string { return digits(v, digitsResult) }
+	for _, f := range r.Filaments {
+		for _, p := range f.Tube.Places {
+			out.write(strconv.Itoa(f.ID), d(p.SUm), d(p.RmsUm), d(p.RmsLowUm), d(p.RmsHighUm), d(p.NoiseUm))
+		}
+	}
+}
+
+func writeLags(out *rowWriter, r *job.Result) {
+	d := func(v float64) string { return digits(v, digitsResult) }
+	for _, f := range r.Filaments {
+		for _, l := range f.Tube.Lags {
+			out.write(strconv.Itoa(f.ID), d(l.LagS), d(l.TransverseMSDUm2), d(l.LongitudinalMSDUm2), strconv.Itoa(l.Pairs))
 		}
 	}
 }
