@@ -237,7 +237,7 @@ func TestWrongUse(t *testing.T) {
 		{[]string{"measure", "bare.tif"}, []string{"--setting"}},
 		{[]string{"measure", "bare.tif", "--setting", "free"}, []string{"bare.tif", "--pixel-um", "--interval-s", "--exposure-s"}},
 		{[]string{"measure", "bare.tif", "--setting", "fre"}, []string{"fre"}},
-		{[]string{"measure", "bare.tif", "--setting", "network"}, []string{"network", "free"}},
+		{[]string{"measure", "bare.tif", "--setting", "adsorbed"}, []string{"adsorbed", "free"}},
 		{[]string{"measure", "bare.tif", "--setting", "free", "--pixel-um", "0"}, []string{"--pixel-um 0", "above 0"}},
 		{[]string{"measure", "bare.tif", "--setting", "free", "--pixel-um", "ten"}, []string{"pixel-um", "number"}},
 		{[]string{"measure", "bare.tif", "--setting", "free", "--pixel-um", "0.1", "--interval-s", "1", "--exposure-s", "2"},

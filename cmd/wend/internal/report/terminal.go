@@ -17,11 +17,20 @@ func Table(w io.Writer, r *job.Result) error {
 		return err
 	}
 	header := []string{"filament", "frames", "length µm", "Lp µm", "95 % interval", "from", "thermal", "flags"}
+	network := r.Settings.Setting == "network"
+	if network {
+		header = []string{"filament", "frames", "length µm", "Lp µm", "95 % interval", "tube rms µm", "95 % interval", "confinement", "flags"}
+	}
 	rows := [][]string{header}
 	for i := range r.Filaments {
 		f := &r.Filaments[i]
 		s := newSummaryRow(f)
 		flags := strings.Join(f.Flags, ";")
+		if network {
+			t := roundInterval(f.Tube.RmsUm, f.Tube.RmsLowUm, f.Tube.RmsHighUm)
+			rows = append(rows, []string{strconv.Itoa(s.ID), fmt.Sprintf("%d/%d", s.Used, s.All), s.Length, s.Lp, s.Interval, t.Value, t.Interval(), f.Confinement, flags})
+			continue
+		}
 		rows = append(rows, []string{strconv.Itoa(s.ID), fmt.Sprintf("%d/%d", s.Used, s.All), s.Length, s.Lp, s.Interval, s.From, s.Thermal, flags})
 	}
 	widths := make([]int, len(header))

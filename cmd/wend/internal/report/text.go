@@ -34,6 +34,9 @@ func answer(f *job.Filament) string {
 	if positive(f.Shapes) {
 		frames += fmt.Sprintf(" that show about %s of its slowest mode", plural(int(math.Round(f.Shapes)), "independent shape", "independent shapes"))
 	}
+	if positive(f.Tube.RmsUm) {
+		return tubeAnswer(f, frames)
+	}
 	v := roundInterval(f.LpUm, f.LpLowUm, f.LpHighUm)
 	switch outcome(f) {
 	case lpMeasured:
@@ -59,6 +62,25 @@ func answer(f *job.Filament) string {
 		why += " (" + strings.Join(f.Flags, ", ") + ")"
 	}
 	return "no persistence length is given: " + why + "."
+}
+
+// tubeAnswer is answer for a filament in a tube.
+func tubeAnswer(f *job.Filament, frames string) string {
+	t := &f.Tube
+	w := roundInterval(t.RmsUm, t.RmsLowUm, t.RmsHighUm)
+	s := fmt.Sprintf("the tube leaves it an rms displacement of %s µm in each transverse direction (95 %% interval %s µm; diameter %s µm as twice the rms)",
+		w.Value, w.Interval(), digits(2*t.RmsUm, 2))
+	if positive(f.LpUm) {
+		v := roundInterval(f.LpUm, f.LpLowUm, f.LpHighUm)
+		s += fmt.Sprintf("; its persistence length, fitted together with the tube, is %s µm (%s µm)", v.Value, v.Interval())
+	} else {
+		s += "; the tube hides its persistence length"
+	}
+	if positive(t.MeshUm) {
+		v := roundInterval(t.MeshUm, t.MeshLowUm, t.MeshHighUm)
+		s += fmt.Sprintf("; that width means a mesh of %s µm (%s µm, statistical) by %s", v.Value, v.Interval(), t.MeshFrom)
+	}
+	return s + ", " + frames + "."
 }
 
 // overall is the answer for the whole stack in one sentence.
@@ -181,6 +203,15 @@ func methodsParagraph(r *job.Result) []string {
 			fmt.Fprintf(&b, " Of the undulation that the exposure averages away, a share remains as noise of the contours; it was fitted, expected at %s %% within a factor of two, as found on synthetic movies.", digits(100*trace.MotionNoise, 2))
 		}
 		b.WriteString(" A filament was called confined where a harmonic tube, which adds its stiffness γ to κk⁴, raised twice the log-likelihood by more than 7.7; stiffness and tube were then fitted together.")
+	}
+	if s.Setting == "network" {
+		b.Reset()
+		b.WriteString("The axis of the tube, a cubic spline with nodes 3 µm apart, was laid through all contours by least squares, together with a drift of the stage that is a polynomial of second degree in time. Displacements across the axis and tangents against it were put on the normal modes of a rod with free ends, the two rigid ones included, each an overdamped Brownian mode with variance kT/(κk⁴+γ) and relaxation time ζ/(κk⁴+γ) in a harmonic tube of stiffness γ. Persistence length, tube, drag and noise were fitted by maximum restricted likelihood about the drift, with the average over the exposure; limits are those of the profile likelihood at 95 %. The width stated is the bulk rms displacement per transverse direction, √(kT/(2√2 κ^¼ γ^¾)), which is free of the excess at the ends.")
+		if s.KnownLpUm > 0 {
+			fmt.Fprintf(&b, " For the tube the persistence length was taken as known from free filaments, %s µm.", plain(s.KnownLpUm))
+		}
+		b.WriteString(" Mesh sizes are ξ = √(3/ρ), from rms = 0.32 ξ^(6/5) Lp^(−1/5) (Hinsch, Wilhelm and Frey, Eur. Phys. J. E 24:35, 2007) unless another prefactor is listed below.")
+		return append(out, b.String())
 	}
 	var classic []string
 	if methods["modes"] {

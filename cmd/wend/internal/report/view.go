@@ -215,6 +215,22 @@ func (v *filamentView) addFigures(r *job.Result, f *job.Filament) {
 		}
 		v.Figures = append(v.Figures, figureView{svg, title, caption, file, wide})
 	}
+	if r.Settings.Setting == "network" && len(f.Tube.Axis.XUm) > 0 {
+		const width = "Widths are rms displacements in one transverse direction; a tube's diameter here is twice that."
+		svg, err := tubeFigure(f)
+		add(svg, err, "The tube", fmt.Sprintf("Up to about %d contours laid over each other, from light (early) to dark (late), with what was found as drift of the stage taken off; the axis, and one bulk rms to each side. %s", contoursLaid, width), tables.TubeFile, true)
+		svg, err = tubeSpectrumFigure(f)
+		add(svg, err, "Normal modes", "Variance of the modes of a rod with free ends. Crosses: as measured. Circles: after correction for noise and exposure. Line: in the tube, 1/(Lp k⁴ + γ/kT). Dashed: a free rod of the same stiffness. Dotted: what noise alone would give.", tables.ModesFile, false)
+		svg, err = displacementFigure(f)
+		add(svg, err, "Displacement", "Distribution of the displacement across the axis, of places away from the ends, a µm apart, each about its own mean; the walls of a harmonic tube make it Gaussian, softer ones leave tails above the line.", tables.EstimatesFile, false)
+		svg, err = lagFigure(f)
+		add(svg, err, "Displacement over time", "Mean-square displacement of places away from the ends, noise and blur included, and of the filament along its axis. The dashed line is where the first must end in a tube of the rms found; the short line has the slope of a filament in a viscous medium.", tables.LagsFile, false)
+		svg, err = widthFigure(f)
+		add(svg, err, "Width along the axis", "Rms displacement at each place, free of noise and blur, with 95 % intervals. Where the filament's own ends are, it is up to twice the bulk value. "+width, tables.TubeFile, true)
+		svg, note, err := lengthFigure(r, f)
+		add(svg, err, "Length over time", strings.TrimSpace("Contour length in each frame. Dots: frames used. Crosses: traced, but not used. Pluses at the foot: not found. "+note), tables.FramesFile, true)
+		return
+	}
 	svg, err := modeFigure(f)
 	add(svg, err, "Bending modes", "Variance of the cosine modes of the tangent angle. Crosses: as measured. Circles: after correction for noise and exposure, with 95 % intervals; filled ones are used, open ones are not. Line: (L/nπ)²/Lp for the persistence length given, with its interval as a band. Dotted: variance that localisation noise alone would give.", tables.ModesFile, false)
 	svg, err = tangentFigure(f)
