@@ -1,9 +1,9 @@
 # Every target that builds asks .ci/setup for the build flags first: it checks Go, installs what is
 # missing where it may, and falls back to the plain-Go ridge map where it may not.
-# Variables: OPENCV=no builds without OpenCV; ARGS are passed on by accuracy, coverage and bench.
+# Variables: OPENCV=no builds without OpenCV; ARGS are passed on by accuracy, contours, coverage and bench.
 
 .DEFAULT_GOAL := help
-.PHONY: help demo test build accuracy coverage bench lint
+.PHONY: help demo test build accuracy contours coverage bench lint
 
 help: ## list the targets
 	@awk -F ':.*## ' '/^[a-z]+:.*## / { printf "make %-10s %s\n", $$1, $$2 }' Makefile
@@ -20,6 +20,9 @@ build: ## set up and build bin/wend
 
 accuracy: ## table of contour and stiffness errors against synthetic truth
 	@flags=$$(.ci/setup) && go run $$flags ./cmd/wend/internal/accuracy $(ARGS)
+
+contours: ## table of centrelines against truth and against the photon limit
+	@flags=$$(.ci/setup) && go run $$flags ./cmd/wend/internal/contours $(ARGS)
 
 coverage: ## how often the 95 % intervals hold the truth
 	@flags=$$(.ci/setup) && go run $$flags ./cmd/wend/internal/coverage $(ARGS)

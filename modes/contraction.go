@@ -69,7 +69,7 @@ func (c contraction) density(x []float64) []float64 {
 	return out
 }
 
-// contractionOf is the distribution that the theory t gives for the contours of a. What the exposure and the noise make of the beam modes goes
+// contractionOf is the distribution that the theory t gives for the contours of a. What the exposure makes of the beam modes goes
 // over to the cosine modes, whose small correlations it leaves out.
 func (a amplitudes) contractionOf(t theory, errorVariance float64) contraction {
 	c := contraction{errorVariance: errorVariance}
@@ -77,7 +77,7 @@ func (a amplitudes) contractionOf(t theory, errorVariance float64) contraction {
 	for m := 1; m <= max(a.held, 1); m++ {
 		p := a.process(BeamWavenumber(m, a.lengthUm), t)
 		shown, _ := mixture{frames: a.frames, weight: []float64{p.Variance}, relaxation: []float64{p.RelaxationS}}.signal()
-		beam = append(beam, shown+a.noise(m, t))
+		beam = append(beam, shown)
 		b := 0.0
 		if m <= a.resolved {
 			_, ofMean, _ := a.modeSpread(m, t)
@@ -98,7 +98,7 @@ func (a amplitudes) contractionOf(t theory, errorVariance float64) contraction {
 }
 
 // fitContraction finds the persistence length, µm, whose distribution of the contraction makes those of the frames most likely. Frames are counted as what
-// they are worth for the mean contraction, since they are correlated. Exposure and noise are in the distribution, with the drag of t; an intrinsic
+// they are worth for the mean contraction, since they are correlated. The exposure is in the distribution, with the drag of t; an intrinsic
 // bend enters as the mean shape. lengthSEUm is the standard error of one frame's length. NaN where the light or the frames do not suffice.
 func fitContraction(a amplitudes, t theory, lengthSEUm float64) distanceFit {
 	nan := math.NaN()

@@ -49,7 +49,7 @@ const mostHidden = 0.5
 // ⟨R²⟩ = 4LpL[1-(2Lp/L)(1-e^(-L/2Lp))].
 //
 // Corrected are: the errors of the ends in R², along the line (lengthSEUm is the standard error of one frame's length) and across;
-// the length that noise adds to the contour and the length of the undulations that exposure and optics hide. An intrinsic bend counts as
+// the length of the undulations that exposure and optics hide. An intrinsic bend counts as
 // flexibility. The interval has the shapes of the modes behind R and the error of the fixed length, taken as the scatter of the lengths,
 // lengthSDUm, over the root of the frames. NaN where the ends are not nearer than the contour is long, or most of the contraction is hidden.
 func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanceFit {
@@ -73,7 +73,7 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 	r2 -= 2 * endVariance
 	length := func(lpUm float64) float64 {
 		missing := a.missingLength(theory{lpUm: lpUm, dragPaS: t.dragPaS, noiseScale: t.noiseScale, tubeRatio: t.tubeRatio})
-		return a.measuredUm + math.Max(-a.measuredUm/2, missing) // noise can't have added more
+		return a.measuredUm + missing
 	}
 	missing := func(x float64) float64 { // falls with Lp where it crosses zero
 		lp := math.Exp(x)
@@ -126,18 +126,17 @@ func fitDistance(a amplitudes, t theory, lengthSDUm, lengthSEUm float64) distanc
 }
 
 // missingLength returns how much longer, µm, the contour is than the contours show: by the undulations that exposure and optics
-// hide, less what noise adds.
+// hide.
 func (a amplitudes) missingLength(t theory) float64 {
 	sum := 0.0
 	count := max(a.held, theoryModes)
 	for m := 1; m <= count; m++ {
 		k := BeamWavenumber(m, a.lengthUm)
-		shown, noise := 0.0, 0.0
+		shown := 0.0
 		if m <= a.held {
 			shown = chain.BlurFactor(a.frames.ExposureS / a.relaxation(k, t))
-			noise = a.noise(m, t)
 		}
-		sum += slopeSquare(m) / (2 * a.lengthUm * a.lengthUm) * ((1-shown)*a.process(k, t).Variance - noise)
+		sum += slopeSquare(m) / (2 * a.lengthUm * a.lengthUm) * (1 - shown) * a.process(k, t).Variance
 	}
 	// The finer modes, with ∫ψ′² → k² and k → (m+½)π/L.
 	return sum + a.lengthUm*a.lengthUm/(2*math.Pi*math.Pi*t.lpUm*float64(count+1))

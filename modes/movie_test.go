@@ -52,7 +52,7 @@ func (f filament) series(t testing.TB) Series {
 		if f.noiseUm3 > 0 {
 			curve = roughen(curve, at, f.lengthUm, f.noiseUm3, rng)
 		}
-		ch, _ := newChords(curve)
+		ch, _ := newChords(Curve{XUm: m.X, YUm: m.Y})
 		lengths = append(lengths, ch.total)
 		s.Curves = append(s.Curves, curve)
 		s.TimesS = append(s.TimesS, float64(i)*f.intervalS)

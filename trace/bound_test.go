@@ -173,7 +173,7 @@ func BenchmarkFit(b *testing.B) {
 		b.Fatalf("%d candidates, error %v", len(candidates), err)
 	}
 	fit := &tracer.fitter
-	fit.camera, fit.width, fit.knots = tracer.conditions.Camera, testWidthPx, 5
+	fit.camera, fit.width, fit.knots = tracer.conditions.Camera, testWidthPx, finestKnots
 	b.ReportAllocs()
 	for b.Loop() {
 		if _, err := fit.fit(f, tracer.background, nil, candidates[0].path); err != nil {

@@ -41,15 +41,16 @@ type Contour struct {
 	// WidthUm is the standard deviation of the line's profile, pixel excluded.
 	WidthUm float64
 	// NoiseUm3 is the noise density P of the centreline: a mode of displacement with
-	// wavenumber q carries the error variance P·exp((q·WidthUm)²), in µm² for an
-	// amplitude normalised as ∫ψ² = 1 times µm, that is µm³.
+	// wavenumber q carries the error variance P·exp(q²w²), in µm² for an amplitude normalised as ∫ψ² = 1
+	// times µm, that is µm³. w is the movie's line width with the pixel ([Conditions].WidthPx): a pixel blurs along
+	// the line as it does across.
 	NoiseUm3 float64
 }
 
 // MotionNoise is the share of the undulation that an exposure averages away which contours show again
 // as noise: a smeared line has no Gaussian profile, and its fit is not exactly its mean. Measured on
-// synthetic movies (8 background photons per pixel, drag 2.4 to 12 mPa·s, exposure 0.03 to 0.2 s, the
-// modes whose noise matters): 0.01 at 3000 photons per µm, 0.02 to 0.05 at 600, 0.06 at 300.
+// synthetic movies (8 background photons per pixel, exposure 0.03 s): at a drag of 2.4 mPa·s 0.08 with 300 photons per µm,
+// 0.04 with 600, 0.02 with 1000 and more; at 12 mPa·s 0.09, 0.04 and 0.01; of soft filaments (3 µm) up to five times that.
 const MotionNoise = 0.04
 
 // Used reports whether the contour may be used.

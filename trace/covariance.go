@@ -7,18 +7,25 @@ import (
 	"gonum.org/v1/gonum/lapack/lapack64"
 )
 
-// curve is the present centreline at arc length s of the reference path: a cubic through the nodes.
+// curve is the present centreline at arc length s of the reference path: a cubic through that path's nodes, and
+// the displacement as it was fitted.
 func (f *fitter) curve(s float64) xy {
-	n := len(f.now)
+	n := len(f.nodes)
 	x := min(max((s-f.at[0])/(f.at[1]-f.at[0]), 0), float64(n-1))
 	k := min(int(x), n-2)
 	t := x - float64(k)
-	a, b := f.now[max(k-1, 0)], f.now[k]
-	c, d := f.now[k+1], f.now[min(k+2, n-1)]
+	a, b := f.nodes[max(k-1, 0)], f.nodes[k]
+	c, d := f.nodes[k+1], f.nodes[min(k+2, n-1)]
 	p := func(a, b, c, d float64) float64 {
 		return b + t*((c-a)/2+t*(a-2.5*b+2*c-d/2+t*((d-a)/2+1.5*(b-c))))
 	}
-	return xy{p(a.x, b.x, c.x, d.x), p(a.y, b.y, c.y, d.y)}
+	u := 0.0
+	first, w := f.shape.weights(s)
+	for i := range w {
+		u += w[i] * f.parameters[f.shapeIdx[first+i]]
+	}
+	normal := f.normals[k].times(1 - t).plus(f.normals[k+1].times(t))
+	return xy{p(a.x, b.x, c.x, d.x), p(a.y, b.y, c.y, d.y)}.plus(normal.times(u))
 }
 
 // stops are evenly spaced arc lengths of the reference path from end to end.
@@ -78,22 +85,25 @@ func (f *fitter) result(points []xy) (fitted, error) {
 		}
 		return v
 	}
-	// The noise of the tangent makes a line longer: by half its variance, summed along it.
-	lengthening := 0.0
 	for i, s := range at {
 		r.se[i] = math.Sqrt(max(quadratic(f.shape.weights(s)), 0))
-		lengthening += quadratic(f.shape.slopes(s)) / 2
 	}
-	span := at[len(at)-1] - at[0]
-	lengthening *= span / float64(len(at))
+	lengthening, lengtheningVar := f.lengthening(at, shapeCov)
 	r.length = arcLengths(points)[len(points)-1] - lengthening
+	r.lengthening = lengthening / r.length
 
-	endsVar := [2]float64{x[f.endsIdx[0]*columns+shapes], x[f.endsIdx[1]*columns+shapes+1]}
-	endsCov := x[f.endsIdx[0]*columns+shapes+1]
-	for k, v := range endsVar {
-		r.endsSE[k] = math.Sqrt(max(v, 0))
+	for k, i := range f.endsIdx {
+		r.endsSE[k] = math.Sqrt(max(x[i*columns+shapes+k], 0))
 	}
-	r.lengthSE = math.Sqrt(max(endsVar[0]+endsVar[1]-2*endsCov, 0))
+	// A length follows the ends, and a bent line that is shifted to the side of its bend is shorter.
+	along := append(f.shortening(at), -1, 1)
+	lengthVar := lengtheningVar
+	for a, i := range append(f.shapeIdx[:shapes:shapes], f.endsIdx[:]...) {
+		for b, w := range along {
+			lengthVar += along[a] * w * x[i*columns+b]
+		}
+	}
+	r.lengthSE = math.Sqrt(max(lengthVar, 0))
 
 	remaining, step := 0.0, 0.0
 	for k, i := range f.smearIdx {
@@ -124,6 +134,48 @@ func (f *fitter) result(points []xy) (fitted, error) {
 	}
 	r.background /= float64(len(f.pixels))
 	return r, nil
+}
+
+// lengthening is by how much the noise of the tangent makes the line longer, half its variance summed along it,
+// with the variance of that: of a Gaussian's squares, ½∫∫cov(u′(s), u′(s′))² ds ds′.
+func (f *fitter) lengthening(at []float64, cov func(a, b int) float64) (mean, variance float64) {
+	step := (at[len(at)-1] - at[0]) / float64(len(at))
+	far := int(math.Ceil(4 * f.shape.step / step))
+	for i, s := range at {
+		a, v := f.shape.slopes(s)
+		for j := i; j < min(i+far, len(at)); j++ {
+			b, w := f.shape.slopes(at[j])
+			c := 0.0
+			for k := range v {
+				for l := range w {
+					c += v[k] * w[l] * cov(a+k, b+l)
+				}
+			}
+			if i == j {
+				mean += c / 2 * step
+				variance += c * c / 2 * step * step
+				continue
+			}
+			variance += c * c * step * step
+		}
+	}
+	return mean, variance
+}
+
+// shortening is the change of the line's length by each shape coefficient, for the bends of the reference path.
+func (f *fitter) shortening(at []float64) []float64 {
+	out := make([]float64, len(f.shapeIdx), len(f.shapeIdx)+2)
+	for j := 1; j+1 < len(f.at); j++ {
+		if f.at[j] < at[0] || f.at[j] > at[len(at)-1] {
+			continue
+		}
+		a, b := f.normals[j-1], f.normals[j+1]
+		turn := math.Atan2(a.x*b.y-a.y*b.x, a.dot(b)) / 2
+		for k, w := range f.shapeBasis[j].w {
+			out[f.shapeBasis[j].first+k] -= turn * w
+		}
+	}
+	return out
 }
 
 // noiseDensity projects the covariance on long waves: a wave of wavenumber q, normalised to

@@ -18,12 +18,13 @@
 // under the camera's own noise: a line of light, blurred by a Gaussian, whose normal
 // displacement is a cubic B-spline. What the pixels say about displacement is, per length,
 // λJ/s² (one-dimensional analogue of Mortensen, Churchman, Spudich & Flyvbjerg, Nat.
-// Methods 7:377 (2010), cited from memory), and no knots nearer than about three line widths
-// have anything to gain: there the Gaussian has wiped the shape out. How far apart the knots
-// are, 3 to 8 line widths, is chosen per movie by the light and the bends that it has
-// ([Conditions].KnotWidths). Shapes with wavelengths above [Conditions.ResolvedWidths] line
-// widths come through unchanged, because the fit includes the blur instead of smoothing on
-// top of it.
+// Methods 7:377 (2010), cited from memory), and a wave of wavenumber q is seen with
+// exp(-q²s²/2) of its amplitude, so that no contour can have less noise than P·exp(q²s²),
+// P = s²/(λJ). Nothing is smoothed on top: the knots are as close as the light of the movie allows,
+// 2.2 to 8 line widths ([Conditions].KnotWidths), whatever the shapes. Waves above
+// [Conditions.ResolvedWidths] line widths then come through with their amplitude and with little
+// more than that noise. A free end carries neither a moment nor a shear force: no bending mode has
+// a curvature there or a change of it, and without knowing that an end is several times as noisy as the middle.
 //
 // # Limits
 //

@@ -28,11 +28,17 @@ const (
 	endReach = 2.5
 	// widest is the largest width of the profile, in line widths.
 	widest = 2.2
-	// endCurvatureSD is how far from straight a free end is taken to be, in radians per line width. It
-	// carries no bending moment: no bending mode that is resolved has a curvature there.
-	endCurvatureSD = 0.06
-	// reach is how far from the line pixels are used and how far a Gaussian is drawn, in line widths.
-	reach = 3.2
+	// endCurvatureSD and endShearSD are how far from straight a free end is taken to be, in radians per line
+	// width and per squared line width. It carries neither a bending moment nor a shear force: no bending mode has
+	// a curvature there, nor a change of it.
+	endCurvatureSD, endShearSD = 0.06, 0.03
+	// curvatureSD is how far from its smooth path a line may bend, in radians per line width: so much more than any
+	// filament that it only keeps a wide stretch, which moved, from being taken for a zigzag.
+	curvatureSD = 2
+	// firstKnots is the least distance between the knots of the first pass, in line widths.
+	firstKnots = 3
+	// reach is how far from the line pixels are used, in line widths.
+	reach = 2.7
 )
 
 var (
@@ -47,6 +53,7 @@ type fitted struct {
 	se     []float64 // standard error across the line at each point
 	// length is free of the lengthening by noise; lengthSE and endsSE are standard errors.
 	length, lengthSE float64
+	lengthening      float64 // that, as a share of the length
 	endsSE           [2]float64
 	brightness       float64 // counts per pixel of length, the mean
 	background       float64 // counts per pixel, the mean beside the line
@@ -71,6 +78,7 @@ type fitter struct {
 	weight         []float64  // share of each node's piece that lies between the ends
 	ends           [2]float64 // of the reference path
 	endCurvature   [2]float64 // of the reference path at its ends, along the normal
+	endShear       [2]float64 // change of that along the line
 	endPoint       [2]xy      // where the ends are now
 	endLight       [2]float64 // brightness there
 	endVariance    [2]float64 // of the profile there
@@ -115,7 +123,7 @@ func (f *fitter) fit(frame, background imaging.Frame, excluded func(pixel int) b
 	path = extent(frame, background, excluded, path, f.width)
 	// The path begins as pixels, in steps that are shorter than the knots are apart: no displacement could take them
 	// out again. Its points are half a pixel apart; what is left are waves that the knots hold.
-	path = smooth(path, f.knots*f.width)
+	path = smooth(path, max(f.knots, firstKnots)*f.width)
 	length := arcLengths(path)[len(path)-1]
 	ends := [2]float64{0, length}
 	var light, smear, under []float64
@@ -131,7 +139,7 @@ func (f *fitter) fit(frame, background imaging.Frame, excluded func(pixel int) b
 		light, smear, under = f.pick(f.lightIdx), f.pick(f.smearIdx), f.pick(f.underIdx)
 		path = f.centreline()
 		ends = [2]float64{0, arcLengths(path)[len(path)-1]}
-		if pass > 0 && moved < 0.3*f.width || pass == passes-1 {
+		if pass > 0 && moved < 0.6*f.width || pass == passes-1 {
 			break
 		}
 	}

@@ -1,53 +1,44 @@
 package trace
 
-import "wend/imaging"
+import "math"
 
-// knotChoices are the distances between knots that are tried, in line widths. With fewer than three
-// the Gaussian has wiped out what the knots could show; with more than eight a filament's
-// bending would be too.
-var knotChoices = []float64{3, 3.5, 4, 5, 6, 8}
+const (
+	// finestKnots and coarsestKnots bound the distance between the knots of a centreline, in line widths. Waves
+	// of less than 5.7 line widths, the shortest that the finest carry, are seen with less than 0.55 of their
+	// amplitude, and to see them as they are costs more than three times the noise.
+	finestKnots, coarsestKnots = 2.2, 8
+	// largestError is how far off a centreline may be by its noise, in line widths: a fit finds out about a line's
+	// place from where its profile is steep, and beyond a quarter of its width its errors are no longer those of
+	// its normal equations.
+	largestError = 0.22
+	// mostLengthening is the share by which the noise of its tangent may lengthen a line: half a tangent's variance, which
+	// is then 0.3 rad.
+	mostLengthening = 0.045
+)
 
-// knotFits is about how many fits each choice is tried on.
-const knotFits = 36
-
-// chooseKnots returns the distance between knots, in line widths, with the least expected error of the
-// centreline: the least χ² + 2·(number of coefficients), Mallows, Technometrics 15:661 (1973) (cited
-// from memory), summed over lines and frames. Where there is light enough, or bends are sharp, the
-// knots are close; where short waves are lost in the noise or blurred by the exposure, they are far
-// apart and keep that noise out. lines is how many fits the frames give in all.
-func chooseKnots(frames []imaging.Frame, o Options, c Conditions, lines int) (float64, error) {
-	if lines == 0 {
-		return knotChoices[len(knotChoices)/2], nil
+// chooseKnots returns the least distance between knots, in line widths, at which a centreline of noise density p, in
+// cubed line widths, is off by no more than largestError. What a wave's noise is does not depend on the shape,
+// so that neither do the knots: contours of straight and of bent lines carry the same waves.
+func chooseKnots(p float64) float64 {
+	if !(p > 0) {
+		return firstKnots
 	}
-	frames = spreadOut(frames, max(2, len(frames)*knotFits/lines))
-	best, least := 0.0, 0.0
-	scale := 1.0
-	for k, knots := range knotChoices {
-		c.KnotWidths = knots
-		tracer, err := NewTracer(o, c)
-		if err != nil {
-			return 0, err
-		}
-		var chi2, pixels, coefficients float64
-		tracer.observe = func(f *fitter, r fitted) {
-			chi2 += f.chi2
-			pixels += float64(len(f.pixels))
-			coefficients += float64(f.size)
-		}
-		for i := range frames {
-			if _, err := tracer.Frame(frames[i], i); err != nil {
-				return 0, err
-			}
-		}
-		if k == 0 && pixels > coefficients {
-			// What even the finest knots do not explain is noise or a wrong model, for all alike.
-			scale = max(chi2/(pixels-coefficients), 0.5)
-		}
-		// The choices see nearly the same pixels; a pixel more adds one to χ² on average.
-		cost := chi2/scale - pixels + 2*coefficients
-		if k == 0 || cost < least {
-			best, least = knots, cost
+	// Knots h apart carry waves up to the wavenumber π/h, each with the noise p·exp(q²): the variance of a point
+	// is the integral of that over q, over π.
+	const step = 0.005
+	variance, q := 0.0, 0.0
+	for q < math.Pi/finestKnots {
+		variance += p / math.Pi * math.Exp(sq(q+step/2)) * step
+		if q += step; variance > sq(largestError) {
+			break
 		}
 	}
-	return best, nil
+	return min(max(math.Pi/q, finestKnots), coarsestKnots)
+}
+
+// knotNoise is the noise density for [chooseKnots]: the predicted one, and more for a line that is wider than others
+// because it moved. Its profile is no Gaussian, and its errors are larger than predicted by about the square of how
+// much its variance is larger.
+func (r fitted) knotNoise() float64 {
+	return r.noise / math.Pow(r.width, 3) * max(1, math.Pow(r.meanWidth/r.width, 4))
 }

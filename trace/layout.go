@@ -32,8 +32,9 @@ type basis2 struct {
 	index [2]int32
 }
 
-// prepare lays the nodes, the bases, the parameters and the band of pixels along path.
-func (f *fitter) prepare(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy, ends [2]float64, half bool) error {
+// prepare lays the nodes, the bases, the parameters and the band of pixels along path. The first pass, which only has to come
+// close, has fewer knots and pixels.
+func (f *fitter) prepare(frame, background imaging.Frame, excluded func(pixel int) bool, path []xy, ends [2]float64, first bool) error {
 	step := nodeSpacing * f.width
 	margin := reach * f.width
 	span := ends[1] - ends[0]
@@ -57,9 +58,14 @@ func (f *fitter) prepare(frame, background imaging.Frame, excluded func(pixel in
 		t := b.minus(a).unit()
 		f.normals[j] = xy{-t.y, t.x}
 	}
-	f.endCurvature = [2]float64{f.bendAt(outer, 1), f.bendAt(outer+inner, -1)}
-	f.layBases()
-	return f.layPixels(frame, background, excluded, half)
+	far := int(math.Ceil(2 * f.width / step))
+	for k, j := range [2]int{outer, outer + inner} {
+		direction := 1 - 2*k
+		f.endCurvature[k] = f.bendAt(j, direction)
+		f.endShear[k] = (f.bendAt(j+direction*far, direction) - f.endCurvature[k]) / (float64(direction*far) * step)
+	}
+	f.layBases(first)
+	return f.layPixels(frame, background, excluded, first)
 }
 
 // bendAt is the curvature of the reference path at node j, along the normal, from the two line widths
@@ -76,9 +82,13 @@ func (f *fitter) bendAt(j, direction int) float64 {
 	return math.Atan2(a.x*b.y-a.y*b.x, a.dot(b)) / span
 }
 
-func (f *fitter) layBases() {
+func (f *fitter) layBases(first bool) {
 	e0, e1 := f.ends[0], f.ends[1]
-	f.shape = cubicOver(e0, e1, f.knots*f.width)
+	knots := f.knots
+	if first {
+		knots = max(knots, firstKnots)
+	}
+	f.shape = cubicOver(e0, e1, knots*f.width)
 	f.light = hatsOver(e0, e1, brightnessKnots*f.width)
 	f.smear = hatsOver(e0, e1, smearKnots*f.width)
 	f.under = hatsOver(e0, e1, backgroundKnots*f.width)
@@ -187,9 +197,11 @@ func (f *fitter) layPixels(frame, background imaging.Frame, excluded func(pixel 
 	f.bandwidth = 0
 	for i := range f.pixels {
 		p := &f.pixels[i]
-		// A pixel beside a fold sees two distant stretches of the line; it belongs to the nearer.
+		// A node further than reach still counts by its place along the line: without it the blur along the line, and so
+		// every short wave, would be taken for less. A pixel beside a fold sees two distant stretches of the line; it
+		// belongs to the nearer.
 		limit := int32(math.Ceil(3*reach/nodeSpacing)) + 1
-		p.first, p.last = max(p.first, p.nearest-limit), min(p.last, p.nearest+limit)
+		p.first, p.last = max(p.first-1, p.nearest-limit, 0), min(p.last+1, p.nearest+limit, int32(len(f.nodes)-1))
 		lo, hi := f.touched(int(p.first), int(p.last), int(p.nearest))
 		p.low, p.high = int32(lo), int32(hi)
 		f.bandwidth = max(f.bandwidth, hi-lo)

@@ -179,7 +179,7 @@ func (f *fitter) accumulate(robust, normal bool) {
 // tabulate writes each node's Gaussian along x and along y, with the node's share of the line in
 // the first.
 func (f *fitter) tabulate() {
-	f.span = 2*int(math.Ceil(reach*f.width*1.2)) + 2
+	f.span = 2*int(math.Ceil(reach*f.width*1.4)) + 2
 	need := len(f.now) * f.span
 	f.alongX, f.alongY = resize(f.alongX, need), resize(f.alongY, need)
 	f.drawn = resize(f.drawn, len(f.now))

@@ -15,7 +15,7 @@ import (
 func (f *fitter) iterate(pass int) (moved float64, err error) {
 	const steps = 12
 	// The first pass only has to bring the path close enough for its normals to be right.
-	settled, keep := 0.02*f.width, 4
+	settled, keep := 0.015*f.width, 4
 	if pass == 0 {
 		settled, keep = 0.1*f.width, 2
 	}
@@ -69,9 +69,44 @@ func (f *fitter) iterate(pass int) (moved float64, err error) {
 	return moved, nil
 }
 
-// secondDifference of three B-spline coefficients, over the squared knot distance, is the curvature at
-// the middle knot.
-var secondDifference = [3]float64{1, -2, 1}
+// Differences of the B-spline coefficients nearest to an end, over powers of the knot distance, are derivatives:
+// the second at the end itself, the third in the cell that begins there.
+var (
+	secondDifference = [3]float64{1, -2, 1}
+	thirdDifference  = [4]float64{-1, 3, -3, 1}
+)
+
+// tie adds the information that scale times the given difference of the shape coefficients, the first of them from
+// coefficients away from end k, is want within sd.
+func (f *fitter) tie(k, from int, difference []float64, scale, want, sd float64, normal bool) {
+	if len(f.shapeIdx) < from+len(difference) {
+		return
+	}
+	index := func(m int) int {
+		m += from
+		if k == 1 {
+			m = len(f.shapeIdx) - 1 - m
+		}
+		return f.shapeIdx[m]
+	}
+	have := 0.0
+	for m, d := range difference {
+		have += scale * d * f.parameters[index(m)]
+	}
+	weight := 1 / (sd * sd)
+	for m, d := range difference {
+		i := index(m)
+		f.gradient[i] += weight * scale * d * (want - have)
+		if !normal {
+			continue
+		}
+		for n, e := range difference {
+			if j := index(n); j >= i {
+				f.normal[i*(f.bandwidth+1)+j-i] += weight * scale * d * scale * e
+			}
+		}
+	}
+}
 
 // prior adds information so weak that it only decides what the pixels leave open (a dark gap,
 // an end without light): shape within 3 widths, brightness within a quarter of its mean. It is added to
@@ -101,25 +136,14 @@ func (f *fitter) prior(normal bool) {
 	for k, i := range f.endsIdx {
 		add(i, 3*f.width, f.parameters[i]-f.ends[k])
 	}
-	// A free end carries no bending moment.
+	// A free end carries no bending moment and no shear force.
 	h := f.shape.step
-	last := len(f.shapeIdx) - 1
-	for k, three := range [2][3]int{{0, 1, 2}, {last, last - 1, last - 2}} {
-		want := -f.endCurvature[k]
-		weight := sq(f.width / endCurvatureSD)
-		have := 0.0
-		for m, c := range three {
-			have += secondDifference[m] * f.parameters[f.shapeIdx[c]] / (h * h)
-		}
-		for m, c := range three {
-			i := f.shapeIdx[c]
-			f.gradient[i] += weight * secondDifference[m] / (h * h) * (want - have)
-			for n, d := range three {
-				if j := f.shapeIdx[d]; normal && j >= i {
-					f.normal[i*(bw+1)+j-i] += weight * secondDifference[m] * secondDifference[n] / sq(h*h)
-				}
-			}
-		}
+	for k := range f.endCurvature {
+		f.tie(k, 0, secondDifference[:], 1/(h*h), -f.endCurvature[k], endCurvatureSD/f.width, normal)
+		f.tie(k, 0, thirdDifference[:], float64(1-2*k)/(h*h*h), -f.endShear[k], endShearSD/sq(f.width), normal)
+	}
+	for from := 1; from < len(f.shapeIdx)-3; from++ {
+		f.tie(0, from, secondDifference[:], 1/(h*h), 0, curvatureSD/f.width, normal)
 	}
 	for k, i := range f.smearIdx {
 		add(i, f.smearPrior(k), f.parameters[i])

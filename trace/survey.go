@@ -30,8 +30,6 @@ const (
 	// firstWidthPx is the line width that a survey starts from: a well sampled image has
 	// between one and two pixels per standard deviation of its PSF (common practice).
 	firstWidthPx = 1.4
-	// firstKnotWidths is the distance between knots until it is chosen.
-	firstKnotWidths = 4
 )
 
 // Survey measures the line width and the camera noise on a dozen frames spread over the movie, in
@@ -63,23 +61,27 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 		}
 		level = append(level, mean/float64(len(back.Pix)))
 	}
-	c := Conditions{WidthPx: firstWidthPx, KnotWidths: firstKnotWidths, MaxCount: hint.MaxCount}
+	c := Conditions{WidthPx: firstWidthPx, KnotWidths: firstKnots, MaxCount: hint.MaxCount}
 	// Until the residuals have spoken the noise is taken as the background's everywhere.
 	c.Camera = imaging.Camera{GainCounts: 1e-6, OffsetCounts: 0, ReadVariance: max(sq(median(noise)), 1.0/12)}
 	var samples imaging.NoiseSamples
+	var densities []float64 // of the noise, cubed line widths
 	lines := 0
 	for round := range 3 {
 		tracer, err := NewTracer(o, c)
 		if err != nil {
 			return Conditions{}, err
 		}
-		samples = imaging.NoiseSamples{}
+		samples, densities = imaging.NoiseSamples{}, nil
 		var widths, misfits []float64
 		tracer.observe = func(f *fitter, r fitted) {
 			if r.length*o.PixelUm >= o.MinLengthUm && r.widthSE > 0 && r.widthSE < 0.3*f.width {
 				widths = append(widths, min(max(f.width+r.widthStep, f.width*0.6), f.width*1.6))
 			}
 			misfits = append(misfits, r.chi2PerPixel)
+			if r.length*o.PixelUm >= o.MinLengthUm {
+				densities = append(densities, r.knotNoise())
+			}
 			f.residuals(frames[0].Width, &samples)
 		}
 		for i := range frames {
@@ -108,9 +110,8 @@ func Survey(src Source, first, last int, o Options, hint CameraHint) (Conditions
 	if math.IsNaN(c.MaxCount) || c.MaxCount == 0 {
 		c.MaxCount = math.Inf(1)
 	}
-	var err error
-	c.KnotWidths, err = chooseKnots(frames, o, c, lines)
-	return c, err
+	c.KnotWidths = chooseKnots(median(densities))
+	return c, nil
 }
 
 // spreadOut returns n of the frames, evenly spread.

@@ -22,10 +22,14 @@ type Conditions struct {
 	MaxCount float64
 }
 
+// ResolvedKnots is the shortest wavelength that contours carry unchanged, in knots: above it the amplitude of a wave
+// is right within 4 % wherever its crests lie between the knots.
+const ResolvedKnots = 2.6
+
 // ResolvedWidths is the shortest wavelength that contours traced with c carry unchanged, in line
-// widths (the standard deviation of the profile): 2.6 knots, above which the amplitude of a wave is right
-// within 3 % wherever its crests lie between the knots.
-func (c Conditions) ResolvedWidths() float64 { return 2.6 * c.KnotWidths }
+// widths (the standard deviation of the profile): [ResolvedKnots] knots. What is shorter than two knots they do not carry
+// at all, neither signal nor noise.
+func (c Conditions) ResolvedWidths() float64 { return ResolvedKnots * c.KnotWidths }
 
 // Tracer finds and fits the contours of one frame after another. It keeps its memory between
 // frames; give each goroutine its own.
@@ -75,6 +79,18 @@ func (t *Tracer) Frame(frame imaging.Frame, number int) ([]Contour, error) {
 		// A line out of focus is wider: fit it again with its own width.
 		if err == nil && math.Abs(r.widthStep) > 0.1*width && math.Abs(r.widthStep) > 4*r.widthSE {
 			t.fitter.width = min(max(width+r.widthStep, 0.7*width), 2*width)
+			if again, e := t.fitter.fit(frame, t.background, others, c.path); e == nil {
+				r = again
+			}
+		}
+		// A line that is dimmer than others, or so smeared by its motion that its short waves are lost, is fitted with knots
+		// further apart.
+		knots := chooseKnots(r.knotNoise())
+		if r.lengthening > mostLengthening {
+			knots = max(knots, 1.5*t.fitter.knots)
+		}
+		if err == nil && knots > 1.1*t.fitter.knots {
+			t.fitter.knots = knots
 			if again, e := t.fitter.fit(frame, t.background, others, c.path); e == nil {
 				r = again
 			}

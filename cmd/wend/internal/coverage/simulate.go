@@ -30,7 +30,7 @@ const (
 
 // simulate draws the contours of a movie: exposure-averaged thermal modes about a bent shape, and noise of the density that is
 // predicted times the noise scale. A contour is shorter than the filament by the undulations that the exposure
-// averaged away, and longer by what noise adds, both entered at their mean.
+// averaged away, which is entered at its mean; what noise adds to a contour is taken off before.
 func simulate(c condition, rng *rand.Rand) modes.Series {
 	s := modes.Series{PSFUm: psfUm, LengthUm: c.lengthUm, IntervalS: c.intervalS, ExposureS: c.exposureS,
 		TemperatureK: temperatureK, FreeEnds: true}
@@ -101,12 +101,12 @@ func place(c modes.Curve, x, y float64) {
 	}
 }
 
-// hiddenShare returns the share of the contour length that beam mode n of wavenumber k hides, less what its noise adds.
+// hiddenShare returns the share of the contour length that beam mode n of wavenumber k hides.
 func hiddenShare(n int, k float64, c condition) float64 {
 	p := likelihood.ModeProcess(k, c.lpUm, c.dragPaS, temperatureK)
 	lost := p.Variance
 	if 2*math.Pi/k > finestUm {
-		lost -= likelihood.Covariance(p, c.exposureS, 0) + c.noiseScale*c.noiseUm3*math.Exp(k*k*psfUm*psfUm)
+		lost -= likelihood.Covariance(p, c.exposureS, 0)
 	}
 	const cells = 400
 	sum := 0.0
