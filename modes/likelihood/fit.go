@@ -144,6 +144,10 @@ func Fit(d Data, o Options) (Result, error) {
 	if curvature := -h[paramLp][paramLp]; curvature > 0 {
 		r.LpUm.Value *= math.Exp(-0.5 / curvature)
 	}
+	// Stiff with little drag or soft with much: where the likelihood has two peaks or a long shoulder, its mean lies between them.
+	if i := r.LpUm; i.Low > 0 && i.High > wideInterval*i.Low && !math.IsInf(i.High, 1) {
+		r.LpUm.Value = math.Exp(r.LpProfile.mean())
+	}
 	r.LpUm.Value = math.Max(r.LpUm.Value, r.LpUm.Low)
 	if math.IsInf(r.LpUm.High, 1) {
 		r.LpUm.Value = math.NaN()
@@ -156,6 +160,9 @@ func Fit(d Data, o Options) (Result, error) {
 	r.PeakAtDragLimit = b.atDragLimit(best[paramDrag])
 	return r, nil
 }
+
+// wideInterval is the ratio of an interval's ends from which its peak alone is a poor value.
+const wideInterval = 3
 
 // bounds are how far each parameter may go.
 func (o Options) bounds() bounds {

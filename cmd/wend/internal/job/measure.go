@@ -137,6 +137,10 @@ func Measure(ctx context.Context, src trace.Source, info imaging.Info, s Setting
 	if err != nil {
 		return nil, err
 	}
+	correlation, err := noiseCorrelation(src, s.FirstFrame, s.LastFrame)
+	if err != nil {
+		return nil, err
+	}
 	hint := hintIn(factor, s.Gain, s.Offset, info.MaxCount)
 	conditions, traced, err := trace.Movie(ctx, counts, s.FirstFrame, s.LastFrame,
 		trace.Options{PixelUm: s.PixelUm, MinLengthUm: s.MinLengthUm}, hint, workers, progress)
@@ -145,7 +149,7 @@ func Measure(ctx context.Context, src trace.Source, info imaging.Info, s Setting
 	}
 	width := conditions.WidthPx * s.PixelUm
 	r := &Result{Version: Version, RidgeImplementation: ridge.Implementation(), Settings: s, Info: info,
-		Camera: cameraOut(conditions.Camera, factor), Optics: Optics{width, width * conditions.ResolvedWidths()}, TimesS: times(info, s)}
+		Camera: cameraOut(conditions.Camera, factor), Optics: Optics{width, width * conditions.ResolvedWidths(), correlation}, TimesS: times(info, s)}
 	trace.QuantiseTimes(r.TimesS)
 	for i := range traced {
 		if err := ctx.Err(); err != nil {
@@ -180,10 +184,9 @@ func times(info imaging.Info, s Settings) []float64 {
 // Analyse turns a traced filament (quantised already) into numbers. optics is what its
 // movie resolves.
 func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Filament {
-	series := SeriesOf(f, timesS, s, optics.LineWidthUm)
+	series := SeriesOf(f, timesS, s, optics)
 	o := modes.DefaultOptions()
 	o.ResolutionPSF = optics.ResolvedUm / optics.LineWidthUm
-	o.ContourPSF = o.ResolutionPSF / trace.ResolvedKnots * 2 // half a wave from knot to knot
 	analyse := modes.Analyse
 	if s.Setting == "network" {
 		analyse = modes.AnalyseNetwork
@@ -227,8 +230,8 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 }
 
 // SeriesOf is what the analysis sees of a filament: its used frames.
-func SeriesOf(f trace.Filament, timesS []float64, s Settings, widthUm float64) modes.Series {
-	out := modes.Series{PSFUm: widthUm, MotionNoise: trace.MotionNoise, IntervalS: s.IntervalS, ExposureS: s.ExposureS,
+func SeriesOf(f trace.Filament, timesS []float64, s Settings, optics Optics) modes.Series {
+	out := modes.Series{PSFUm: optics.LineWidthUm, Processed: optics.Processed(), MotionNoise: trace.MotionNoise, IntervalS: s.IntervalS, ExposureS: s.ExposureS,
 		TemperatureK: s.TemperatureC + chain.ZeroCelsius, ChamberUm: s.ChamberUm, RadiusUm: s.RadiusNm / 1000,
 		ViscosityPaS: s.ViscosityMPas / 1000, HeightUm: s.HeightUm,
 		KnownLpUm: s.KnownLpUm, KnownLpLowUm: s.KnownLpLowUm, KnownLpHighUm: s.KnownLpHighUm, ActinMgPerMl: s.ActinMgPerMl,
@@ -238,9 +241,9 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, widthUm float64) m
 		if !c.Used() {
 			continue
 		}
-		// modes corrects for what blur hides of a length.
-		lengths = append(lengths, c.LengthUm)
+		// modes corrects for what noise adds to a length and what blur hides of it.
 		line := c.Line()
+		lengths = append(lengths, line[len(line)-1].SUm)
 		curve := modes.Curve{XUm: make([]float64, len(line)), YUm: make([]float64, len(line))}
 		for i, p := range line {
 			curve.XUm[i], curve.YUm[i] = p.XUm, p.YUm

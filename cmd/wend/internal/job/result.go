@@ -42,10 +42,14 @@ type Warning struct {
 }
 
 // Optics is what a movie resolves, in µm: the standard deviation of a line's profile, pixel and motion
-// included, and the shortest wavelength that its contours carry unchanged.
+// included, and the shortest wavelength that its contours carry unchanged; and by how much the noise of neighbouring pixels is alike, see [imaging.NoiseCorrelation], NaN where that
+// is not known.
 type Optics struct {
-	LineWidthUm, ResolvedUm float64
+	LineWidthUm, ResolvedUm, NoiseCorrelation float64
 }
+
+// Processed says whether the images are not as the camera took them.
+func (o Optics) Processed() bool { return o.NoiseCorrelation > imaging.ProcessedAbove }
 
 // Result is everything that one stack gave.
 type Result struct {

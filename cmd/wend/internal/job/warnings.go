@@ -27,6 +27,9 @@ func warnings(r *Result) []Warning {
 	if r.Camera.Source == imaging.CameraFromBackground {
 		add("camera", "The camera's gain could not be measured from the stack and is a guess: photons are not to be trusted, and errors only roughly. Pass --gain and --offset if you know them.")
 	}
+	if r.Optics.Processed() {
+		add("processed", "The noise of neighbouring pixels is alike (correlation %.2f, raw camera frames have none): the images were denoised, resampled, registered or compressed with loss. Intervals and noise cannot be trusted; measure the raw files.", r.Optics.NoiseCorrelation)
+	}
 	for _, f := range r.Filaments {
 		if f.FramesUsed == 0 {
 			add("unused", "Filament %d was seen but could not be used in any frame; frames.csv gives the reasons.", f.ID)

@@ -90,6 +90,8 @@ type CameraSummary struct {
 type OpticsSummary struct {
 	LineWidthUm *float64 `json:"line_width_um"`
 	ResolvedUm  *float64 `json:"resolved_um"`
+	// NoiseCorrelation of neighbouring pixels: near 0 in raw camera frames.
+	NoiseCorrelation *float64 `json:"noise_correlation"`
 }
 
 // Counts says how much came out of the stack.
@@ -160,7 +162,7 @@ func Summarise(r *job.Result) Summary {
 			ReadableFrames: SettingValue[bool]{s.ReadableFrames, source("readable_frames")},
 		},
 		Camera: CameraSummary{pointer(r.Camera.GainCounts), pointer(r.Camera.OffsetCounts), pointer(r.Camera.ReadVariance), r.Camera.Source},
-		Optics: OpticsSummary{pointer(r.Optics.LineWidthUm), pointer(r.Optics.ResolvedUm)},
+		Optics: OpticsSummary{pointer(r.Optics.LineWidthUm), pointer(r.Optics.ResolvedUm), pointer(r.Optics.NoiseCorrelation)},
 		Counts: counts, Warnings: warnings,
 	}
 }
@@ -219,7 +221,7 @@ func (s *Summary) fill(r *job.Result) {
 			"gain": set.Gain.Source, "offset": set.Offset.Source, "readable_frames": set.ReadableFrames.Source}}
 	r.Camera = imaging.Camera{GainCounts: value(s.Camera.GainCounts), OffsetCounts: value(s.Camera.OffsetCounts),
 		ReadVariance: value(s.Camera.ReadVariance), Source: s.Camera.Source}
-	r.Optics = job.Optics{LineWidthUm: value(s.Optics.LineWidthUm), ResolvedUm: value(s.Optics.ResolvedUm)}
+	r.Optics = job.Optics{LineWidthUm: value(s.Optics.LineWidthUm), ResolvedUm: value(s.Optics.ResolvedUm), NoiseCorrelation: value(s.Optics.NoiseCorrelation)}
 	for _, w := range s.Warnings {
 		r.Warnings = append(r.Warnings, job.Warning(w))
 	}
