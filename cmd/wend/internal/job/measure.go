@@ -187,6 +187,7 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 	series := SeriesOf(f, timesS, s, optics)
 	o := modes.DefaultOptions()
 	o.ResolutionPSF = optics.ResolvedUm / optics.LineWidthUm
+	o.ContourPSF = o.ResolutionPSF / trace.ResolvedKnots * 2 // half a wave from knot to knot
 	analyse := modes.Analyse
 	if s.Setting == "network" {
 		analyse = modes.AnalyseNetwork
@@ -241,9 +242,9 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, optics Optics) mod
 		if !c.Used() {
 			continue
 		}
-		// modes corrects for what noise adds to a length and what blur hides of it.
+		// modes corrects for what blur hides of a length.
+		lengths = append(lengths, c.LengthUm)
 		line := c.Line()
-		lengths = append(lengths, line[len(line)-1].SUm)
 		curve := modes.Curve{XUm: make([]float64, len(line)), YUm: make([]float64, len(line))}
 		for i, p := range line {
 			curve.XUm[i], curve.YUm[i] = p.XUm, p.YUm
