@@ -89,7 +89,7 @@ func (t *Tracer) Frame(frame imaging.Frame, number int) ([]Contour, error) {
 		if r.lengthening > mostLengthening {
 			knots = max(knots, 1.5*t.fitter.knots)
 		}
-		if err == nil && knots > 1.1*t.fitter.knots {
+		if err == nil && knots > 1.4*t.fitter.knots {
 			t.fitter.knots = knots
 			if again, e := t.fitter.fit(frame, t.background, others, c.path); e == nil {
 				r = again
