@@ -30,7 +30,7 @@ const (
 
 // simulate draws the contours of a movie: exposure-averaged thermal modes about a bent shape, and noise of the density that is
 // predicted times the noise scale. A contour is shorter than the filament by the undulations that the exposure
-// averaged away, which is entered at its mean; what noise adds to a contour is taken off before.
+// averaged away, and longer by what noise adds, both entered at their mean; the length that is stated has the noise's part taken off.
 func simulate(c condition, rng *rand.Rand) modes.Series {
 	s := modes.Series{PSFUm: psfUm, LengthUm: c.lengthUm, IntervalS: c.intervalS, ExposureS: c.exposureS,
 		TemperatureK: temperatureK, FreeEnds: true}
@@ -42,11 +42,12 @@ func simulate(c condition, rng *rand.Rand) modes.Series {
 	}
 	s.TimesS = f.TimesS
 	var amplitude [][]float64
-	missing := 0.0 // 1 less the ratio of the two lengths
+	missing, added := 0.0, 0.0 // shares of the length that the exposure hides and that noise adds
 	for n := 1; 2*math.Pi/modes.BeamWavenumber(n, c.lengthUm) > finestUm; n++ {
 		k := modes.BeamWavenumber(n, c.lengthUm)
 		b := likelihood.Simulate(likelihood.ModeProcess(k, c.lpUm, c.dragPaS, temperatureK), f, rng)
 		missing += hiddenShare(n, k, c)
+		added += slopeShare(n, c) * c.noiseScale * c.noiseUm3 * math.Exp(k*k*psfUm*psfUm)
 		for i := range b {
 			b[i] += math.Sqrt(c.noiseScale*s.NoiseUm3[i]) * math.Exp(k*k*psfUm*psfUm/2) * rng.NormFloat64()
 		}
@@ -79,7 +80,7 @@ func simulate(c condition, rng *rand.Rand) modes.Series {
 				angle += b[i] * slopes[j*len(amplitude)+n]
 			}
 			sin, cos := math.Sincos(angle)
-			x, y = x+h*(1-missing)*cos, y+h*(1-missing)*sin
+			x, y = x+h*(1-missing+added)*cos, y+h*(1-missing+added)*sin
 			if j%fine == fine-1 {
 				curve.XUm, curve.YUm = append(curve.XUm, x), append(curve.YUm, y)
 			}
@@ -108,11 +109,16 @@ func hiddenShare(n int, k float64, c condition) float64 {
 	if 2*math.Pi/k > finestUm {
 		lost -= likelihood.Covariance(p, c.exposureS, 0)
 	}
+	return lost * slopeShare(n, c)
+}
+
+// slopeShare returns the share of the length that a unit of b² of mode n takes up, 1/µm³.
+func slopeShare(n int, c condition) float64 {
 	const cells = 400
 	sum := 0.0
 	for i := range cells {
 		d := chain.BeamSlope(n, (float64(i)+0.5)/cells)
 		sum += d * d / cells
 	}
-	return lost * sum / (2 * math.Pow(c.lengthUm, 3))
+	return sum / (2 * math.Pow(c.lengthUm, 3))
 }
