@@ -47,11 +47,17 @@ type Contour struct {
 	NoiseUm3 float64
 }
 
-// MotionNoise is the share of the undulation that an exposure averages away which contours show again
-// as noise: a smeared line has no Gaussian profile, and its fit is not exactly its mean. Measured on
-// synthetic movies (8 background photons per pixel, exposure 0.03 s): at a drag of 2.4 mPa·s 0.08 with 300 photons per µm,
-// 0.04 with 600, 0.02 with 1000 and more; at 12 mPa·s 0.09, 0.04 and 0.01; of soft filaments (3 µm) up to five times that.
-const MotionNoise = 0.04
+// MotionNoise returns the share of the undulation that an exposure averages away which contours are expected to show again
+// as noise, for a line of photonsPerUm: a smeared line has no Gaussian profile, and its fit is not exactly its mean. Measured on
+// synthetic movies (8 background photons per pixel, exposure 0.03 s, Lp 17 µm): at a drag of 2.4 mPa·s 0.07, 0.04, 0.02 and 0.02 with 300, 600, 1000 and
+// 2000 photons per µm; at 12 mPa·s 0.10, 0.04, 0.015 and 0.007. Of soft filaments (3 µm) it is up to five times that. 0.04 where the light is not known.
+func MotionNoise(photonsPerUm float64) float64 {
+	const share, at, least, most = 0.04, 600, 0.008, 0.1
+	if !(photonsPerUm > 0) {
+		return share
+	}
+	return min(max(share*at/photonsPerUm, least), most)
+}
 
 // Used reports whether the contour may be used.
 func (c Contour) Used() bool { return c.Count() > 1 && c.Reason == "" }

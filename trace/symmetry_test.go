@@ -153,7 +153,7 @@ func TestFitHairpin(t *testing.T) {
 		t.Errorf("length %.2f pixels, want %.2f", l, want)
 	}
 	r, _ := fitOf(testTracer(4, 1.5), d.frame)
-	if e := interiorError(r, hairpin); !(e < 3) {
-		t.Errorf("%.2f nm rms off without noise, want 3 or less", e)
+	if e := interiorError(r, hairpin); !(e < 5) { // the bend begins at once, the knots are half a µm apart
+		t.Errorf("%.2f nm rms off without noise, want 5 or less", e)
 	}
 }

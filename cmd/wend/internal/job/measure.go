@@ -232,16 +232,17 @@ func Analyse(f trace.Filament, timesS []float64, s Settings, optics Optics) Fila
 
 // SeriesOf is what the analysis sees of a filament: its used frames.
 func SeriesOf(f trace.Filament, timesS []float64, s Settings, optics Optics) modes.Series {
-	out := modes.Series{PSFUm: optics.LineWidthUm, Processed: optics.Processed(), MotionNoise: trace.MotionNoise, IntervalS: s.IntervalS, ExposureS: s.ExposureS,
+	out := modes.Series{PSFUm: optics.LineWidthUm, Processed: optics.Processed(), IntervalS: s.IntervalS, ExposureS: s.ExposureS,
 		TemperatureK: s.TemperatureC + chain.ZeroCelsius, ChamberUm: s.ChamberUm, RadiusUm: s.RadiusNm / 1000,
 		ViscosityPaS: s.ViscosityMPas / 1000, HeightUm: s.HeightUm,
 		KnownLpUm: s.KnownLpUm, KnownLpLowUm: s.KnownLpLowUm, KnownLpHighUm: s.KnownLpHighUm, ActinMgPerMl: s.ActinMgPerMl,
 		MeshPrefactor: s.MeshPrefactor, MeshFiniteTerm: s.MeshFiniteTerm, FreeEnds: true}
-	var lengths, errors []float64
+	var lengths, errors, photons []float64
 	for _, c := range f.Contours {
 		if !c.Used() {
 			continue
 		}
+		photons = append(photons, c.PhotonsPerUm)
 		// modes corrects for what blur hides of a length.
 		lengths = append(lengths, c.LengthUm)
 		line := c.Line()
@@ -254,6 +255,7 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, optics Optics) mod
 		out.NoiseUm3 = append(out.NoiseUm3, c.NoiseUm3)
 		errors = append(errors, c.LengthSEUm)
 	}
+	out.MotionNoise = trace.MotionNoise(median(photons))
 	out.LengthUm, out.LengthSEUm, out.LengthSDUm = median(lengths), median(errors), deviation(lengths)
 	return out
 }

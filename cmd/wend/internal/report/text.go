@@ -8,7 +8,6 @@ import (
 
 	"wend/cmd/wend/internal/job"
 	"wend/cmd/wend/internal/tables"
-	"wend/trace"
 )
 
 // The ways in which a filament's persistence length may come out.
@@ -200,7 +199,7 @@ func methodsParagraph(r *job.Result) []string {
 		if s.ExposureS == 0 {
 			b.WriteString(" No correction for motion during the exposure was made.")
 		} else {
-			fmt.Fprintf(&b, " Of the undulation that the exposure averages away, a share remains as noise of the contours; it was fitted, expected at %s %% within a factor of two, as found on synthetic movies.", digits(100*trace.MotionNoise, 2))
+			b.WriteString(" Of the undulation that the exposure averages away, a share of one to ten per cent, the less the more light, remains as noise of the contours; it was fitted, and expected within a factor of two as found on synthetic movies.")
 		}
 		b.WriteString(" A filament was called confined where a harmonic tube, which adds its stiffness γ to κk⁴, raised twice the log-likelihood by more than 7.7; stiffness and tube were then fitted together.")
 	}
