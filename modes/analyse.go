@@ -83,6 +83,7 @@ func Analyse(s Series, o Options) Result {
 		r.flag(FlagChanging)
 	}
 	r.judge(a, fit, t, bound, s, o)
+	r.rejected(s)
 	return r
 }
 

@@ -189,3 +189,18 @@ func TestAnalyseLengthScatter(t *testing.T) {
 		t.Errorf("a length that scatters: thermal %s, flags %v", r.Thermal, r.Flags)
 	}
 }
+
+// Where most frames were rejected nothing is given; where a third was used, it is.
+func TestAnalyseMostRejected(t *testing.T) {
+	s := filament{lengthUm: 8, lpUm: 15, dragPaS: 4e-3, frames: 30, intervalS: 0.5, exposureS: 0.05, noiseUm3: 5e-5, seed: 6}.series(t)
+	for _, tc := range []struct {
+		frames int
+		given  bool
+	}{{0, true}, {90, true}, {91, false}} {
+		s.Frames = tc.frames
+		r := Analyse(s, DefaultOptions())
+		if given := r.LpUm > 0; given != tc.given || has(r, FlagMostRejected) == tc.given {
+			t.Errorf("30 of %d frames used: Lp %g, flags %v", tc.frames, r.LpUm, r.Flags)
+		}
+	}
+}

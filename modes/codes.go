@@ -19,6 +19,7 @@ const (
 	FlagModesDisagree   = "modes_disagree"   // the modes do not tell one persistence length
 	FlagNoise           = "noise"            // the noise is far from the predicted
 	FlagRolling         = "rolling"          // a bent filament shows mirrored shapes
+	FlagMostRejected    = "most_rejected"    // most frames could not be used
 	FlagPinned          = "pinned"           // a place along the filament stays where it is
 	FlagProcessed       = "processed"        // the images are not as the camera took them
 	FlagLpHidden        = "lp_hidden"        // the tube hides the persistence length

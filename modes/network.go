@@ -99,6 +99,7 @@ func AnalyseNetwork(s Series, o Options) Result {
 	r.judgeTube(in, fit, t, o)
 	r.tube(in, fit, t, s)
 	r.motion(in, t, s)
+	r.rejected(s)
 	r.Tube.Axis = Curve{XUm: frame.x, YUm: frame.y}
 	for i := range a.frames.TimesS {
 		dx, dy, _ := frame.drift(i)

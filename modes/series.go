@@ -40,6 +40,8 @@ type Series struct {
 	ActinMgPerMl, MeshPrefactor, MeshFiniteTerm float64
 	// Processed says that the images were denoised, resampled or compressed with loss, so that NoiseUm3 is not to be trusted.
 	Processed bool
+	// Frames is how many frames the filament was followed through, used or not; 0 where that is not known.
+	Frames int
 	// FreeEnds says whether both ends were seen.
 	FreeEnds bool
 }

@@ -110,13 +110,34 @@ func (r *Result) doubted() bool {
 	return false
 }
 
+// leastUsed is the share of the frames that must be usable: what is left of a filament that is mostly lost is often a piece of it, whose length and bending are not
+// the filament's.
+const leastUsed = 1. / 3
+
+// rejected takes the persistence length and the tube away where most frames were rejected.
+func (r *Result) rejected(s Series) {
+	if s.Frames == 0 || float64(len(s.Curves)) >= leastUsed*float64(s.Frames) {
+		return
+	}
+	r.flag(FlagMostRejected)
+	if r.Thermal == ThermalYes {
+		r.Thermal = ThermalUnclear
+	}
+	r.withhold("most frames were rejected")
+}
+
 // withhold takes away every persistence length and rigidity, for the reason given.
 func (r *Result) withhold(why string) {
 	nan := math.NaN()
 	r.LpUm, r.LpLowUm, r.LpHighUm, r.LpFrom = nan, nan, nan, ""
 	r.TangentFitLpUm, r.TangentFitIntercept = nan, nan
+	t := noTube()
+	r.Tube.RmsUm, r.Tube.RmsLowUm, r.Tube.RmsHighUm = t.RmsUm, t.RmsLowUm, t.RmsHighUm
+	r.Tube.MeshUm, r.Tube.MeshLowUm, r.Tube.MeshHighUm, r.Tube.MeshFrom = t.MeshUm, t.MeshLowUm, t.MeshHighUm, ""
 	for i := range r.Estimates {
-		if e := &r.Estimates[i]; e.Quantity == QuantityLp || e.Quantity == QuantityRigidity || e.Quantity == QuantityModulus {
+		if e := &r.Estimates[i]; e.Method != MethodKnown && (e.Quantity == QuantityLp || e.Quantity == QuantityRigidity || e.Quantity == QuantityModulus ||
+			e.Quantity == QuantityTubeRms || e.Quantity == QuantityTubeDiameter || e.Quantity == QuantityTubeStiffness || e.Quantity == QuantityDeflection ||
+			e.Quantity == QuantityMesh && e.Method != MeshFromConcentration) {
 			e.Value, e.Low, e.High, e.Note = nan, nan, nan, "not given: "+why
 		}
 	}

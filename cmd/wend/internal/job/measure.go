@@ -255,6 +255,7 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, optics Optics) mod
 		out.NoiseUm3 = append(out.NoiseUm3, c.NoiseUm3)
 		errors = append(errors, c.LengthSEUm)
 	}
+	out.Frames = len(f.Contours)
 	out.MotionNoise = trace.MotionNoise(median(photons))
 	out.LengthUm, out.LengthSEUm, out.LengthSDUm = median(lengths), median(errors), deviation(lengths)
 	return out

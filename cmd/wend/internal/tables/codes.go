@@ -59,6 +59,7 @@ var codes = []Code{
 	{KindFlag, "rolling", "A filament with a bend of its own turned over and shows mirrored shapes, which widens the variance of the long waves and makes it look softer; use a thinner chamber."},
 	{KindFlag, "projection", "The chamber is deep enough for tilt and out-of-plane bending to matter, so that the planar theory gives too small a persistence length; use a thinner chamber or longer filaments."},
 	{KindFlag, "processed", "The noise of neighbouring pixels is correlated: the images were denoised, resampled or compressed with loss, so that the errors cannot be trusted; go back to the raw files."},
+	{KindFlag, "most_rejected", "More than two frames in three could not be used, and what is left may be a piece of the filament, so that no value is given: use more light, or see the reasons in frames.csv."},
 	{KindFlag, "few_shapes", "The filament went through few independent shapes, so that the interval is wide however many frames there are; record for longer, not faster."},
 	{KindFlag, "few_frames", "Too few frames could be used for an estimate; see the reasons in frames.csv."},
 	{KindFlag, "short", "The filament is short against the optical resolution, so that at most a mode or two can be measured; take longer filaments."},
