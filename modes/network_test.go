@@ -26,6 +26,9 @@ func inBentTube(t testing.TB, f filament, radiusUm, driftX, driftY float64) Seri
 
 // Recovery from contours: tubes straight and bent, with drift, exposures short against the tube's relaxation or the stiffness known; the movie gives back the bulk rms, free of the four-fold excess at the ends.
 func TestAnalyseNetworkRecovers(t *testing.T) {
+	if testing.Short() {
+		t.Skip("many movies")
+	}
 	for _, tc := range []struct {
 		name           string
 		rms, radius    float64
@@ -72,6 +75,9 @@ func TestAnalyseNetworkRecovers(t *testing.T) {
 
 // A free filament is not called confined.
 func TestAnalyseNetworkFree(t *testing.T) {
+	if testing.Short() {
+		t.Skip("many movies")
+	}
 	t.Parallel()
 	for i := range 4 {
 		f := ordinary
@@ -146,6 +152,9 @@ func TestRodInTubeEndExcess(t *testing.T) {
 
 // The covariance estimator gives back the diffusion along the axis under noise of the ends.
 func TestSlidingRecovers(t *testing.T) {
+	if testing.Short() {
+		t.Skip("many movies")
+	}
 	t.Parallel()
 	held := 0
 	const runs = 6

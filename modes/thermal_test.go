@@ -17,6 +17,9 @@ const judged = 7 // movies of each kind
 // over analyses movies of f, each altered by spoil, and counts what is said.
 func over(t *testing.T, f filament, spoil func(s *Series, rng *rand.Rand)) (yes, no int, results []Result) {
 	t.Helper()
+	if testing.Short() {
+		t.Skip("many movies")
+	}
 	for i := range judged {
 		f.seed = uint64(500 + i)
 		s := f.series(t)

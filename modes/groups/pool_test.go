@@ -65,6 +65,9 @@ func TestPoolCounts(t *testing.T) {
 
 // Coverage: intervals of the mean hold it in 19 of 20 studies or more, few preparations and many, with bounds among the members;
 func TestPoolCoverage(t *testing.T) {
+	if testing.Short() {
+		t.Skip("many movies")
+	}
 	for _, tc := range []struct {
 		name                      string
 		preparations, filaments   int
@@ -76,7 +79,7 @@ func TestPoolCoverage(t *testing.T) {
 	} {
 		t.Run(tc.name, func(t *testing.T) {
 			t.Parallel()
-			const studies = 60
+			const studies = 30
 			held, bias := 0, 0.0
 			rng := rand.New(rand.NewPCG(1, 1))
 			for range studies {
@@ -103,8 +106,8 @@ func TestPoolCoverage(t *testing.T) {
 				bias += (math.Log(p.Mean) - 2.7) / studies
 			}
 			t.Logf("%d of %d, bias %+.3f", held, studies, bias)
-			// 60 of 95 %: below 52 has probability 0.004; above is no harm here.
-			if held < 52 || math.Abs(bias) > 0.06 {
+			// 30 of 95 %: below 25 has probability 0.003; above is no harm here.
+			if held < 25 || math.Abs(bias) > 0.08 {
 				t.Errorf("%d of %d intervals hold the mean, bias %.3f", held, studies, bias)
 			}
 		})

@@ -71,6 +71,9 @@ func TestTubePerUm3(t *testing.T) {
 
 // Recovery: tubes narrow and wide, sampled fast and slowly, with the stiffness fitted or known.
 func TestNetworkRecovers(t *testing.T) {
+	if testing.Short() {
+		t.Skip("many movies")
+	}
 	for _, tc := range []struct {
 		name               string
 		rms, drag          float64

@@ -46,6 +46,9 @@ func TestTubeLimits(t *testing.T) {
 // Recovery: free filaments are hardly ever called confined, confined ones found, and the intervals of the tube and, with it fitted, of
 // the persistence length hold the truth.
 func TestConfinementRecovers(t *testing.T) {
+	if testing.Short() {
+		t.Skip("many movies")
+	}
 	const runs = 25
 	o := DefaultOptions()
 	for _, ratio := range []float64{0, 2.8} {
