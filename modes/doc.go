@@ -1,7 +1,7 @@
 // Package modes answers: what do a filament's contours, frame after frame, say about its stiffness?
 //
 // Start with [Analyse], which takes the contours of one filament as a [Series] and fills a
-// [Result]; [BeamAmplitudes] turns a single contour into bending-mode amplitudes.
+// [Result]; [AnalyseNetwork] is the same for a filament in the tube that its neighbours leave it; [BeamAmplitudes] turns a single contour into bending-mode amplitudes.
 //
 // # Units
 //
