@@ -236,13 +236,17 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, optics Optics) mod
 		TemperatureK: s.TemperatureC + chain.ZeroCelsius, ChamberUm: s.ChamberUm, RadiusUm: s.RadiusNm / 1000,
 		ViscosityPaS: s.ViscosityMPas / 1000, HeightUm: s.HeightUm,
 		KnownLpUm: s.KnownLpUm, KnownLpLowUm: s.KnownLpLowUm, KnownLpHighUm: s.KnownLpHighUm, ActinMgPerMl: s.ActinMgPerMl,
-		MeshPrefactor: s.MeshPrefactor, MeshFiniteTerm: s.MeshFiniteTerm, FreeEnds: true}
+		MeshPrefactor: s.MeshPrefactor, MeshFiniteTerm: s.MeshFiniteTerm}
 	var lengths, errors, photons []float64
+	unseen := 0
 	for _, c := range f.Contours {
 		if !c.Used() {
 			continue
 		}
 		photons = append(photons, c.PhotonsPerUm)
+		if c.Ends[0] != trace.EndFree || c.Ends[1] != trace.EndFree {
+			unseen++
+		}
 		// modes corrects for what blur hides of a length.
 		lengths = append(lengths, c.LengthUm)
 		line := c.Line()
@@ -256,6 +260,7 @@ func SeriesOf(f trace.Filament, timesS []float64, s Settings, optics Optics) mod
 		errors = append(errors, c.LengthSEUm)
 	}
 	out.Frames = len(f.Contours)
+	out.FreeEnds = 10*unseen <= len(lengths)
 	out.MotionNoise = trace.MotionNoise(median(photons))
 	out.LengthUm, out.LengthSEUm, out.LengthSDUm = median(lengths), median(errors), deviation(lengths)
 	return out

@@ -51,6 +51,7 @@ type filamentView struct {
 	Sentence, Line string
 	Flags          []codeRow
 	Figures        []figureView
+	VarianceUnit   string // of the modes
 	Modes          []modeRow
 	Estimates      []estimateRow
 	Drops          []dropRow
@@ -190,6 +191,10 @@ func newFilamentView(r *job.Result, f *job.Filament) filamentView {
 		}
 	}
 	v.Drops = dropRows(drops)
+	v.VarianceUnit = "µm"
+	if r.Settings.Setting == "network" {
+		v.VarianceUnit = "µm³"
+	}
 	v.addFigures(r, f)
 	for _, m := range f.Modes {
 		v.Modes = append(v.Modes, newModeRow(m))
