@@ -43,6 +43,7 @@ func Analyse(s Series, o Options) Result {
 		fit = r.confine(data, fit, o)
 		bound = openAbove(&fit)
 	}
+	whole := fit
 	a.motionNoise = fit.MotionNoise
 	t := theory{lpUm: fit.PeakLpUm, dragPaS: fit.DragPaS.Value, noiseScale: fit.NoiseScale, tubeRatio: fit.TubeRatio}
 	if bound {
@@ -79,7 +80,7 @@ func Analyse(s Series, o Options) Result {
 	if h := s.ChamberUm; h > 0 && ProjectionFactor(h, a.lengthUm) < leastProjection {
 		r.flag(FlagProjection)
 	}
-	if disagree(a, o) {
+	if disagree(a, whole, o) {
 		r.flag(FlagChanging)
 	}
 	r.judge(a, fit, t, bound, s, o)

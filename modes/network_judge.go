@@ -92,7 +92,7 @@ func (in inTube) changes(fit likelihood.Result, o Options) bool {
 		return false
 	}
 	lo := o.Likelihood
-	lo.Network, lo.LpOnly, lo.KnownLpUm, lo.KnownLpSD = true, true, fit.PeakLpUm, 0
+	lo.Network, lo.LpOnly, lo.KnownLpUm, lo.KnownLpSD, lo.From = true, true, fit.PeakLpUm, 0, &fit
 	half := func(from, to int) (likelihood.Profile, bool) {
 		d := in.data
 		d.TimesS = in.frames.TimesS[from:to]

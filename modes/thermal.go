@@ -163,13 +163,13 @@ func (r *Result) widen(factor float64) {
 
 // disagree reports whether the first and the second half of the movie can't have one persistence length: twice the log-likelihood
 // lost by giving them one, drag and noise scale each their own, beyond the χ² quantile.
-func disagree(a amplitudes, o Options) bool {
+func disagree(a amplitudes, whole likelihood.Result, o Options) bool {
 	n := len(a.frames.TimesS)
 	if n < 2*minHalf {
 		return false
 	}
 	lo := o.Likelihood
-	lo.LpOnly = true
+	lo.LpOnly, lo.Confined, lo.From = true, whole.TubeRatio > 0, &whole
 	first, err1 := likelihood.Fit(a.data(0, n/2), lo)
 	second, err2 := likelihood.Fit(a.data(n/2, n), lo)
 	if err1 != nil || err2 != nil {

@@ -27,6 +27,8 @@ type Options struct {
 	LpLowUm, LpHighUm float64
 	// Confidence is that of the intervals.
 	Confidence float64
+	// From, if not nil, is a result of similar data to climb from, in the place of a search.
+	From *Result
 	// LpOnly leaves out the profile of the drag and the single tracks, for a quicker answer.
 	LpOnly bool
 }
@@ -93,7 +95,9 @@ func Fit(d Data, o Options) (Result, error) {
 	m, b, free := newModel(d, o), o.bounds(), o.free(d)
 	var best vector
 	var top float64
-	if o.Network {
+	if o.From != nil {
+		best, top = maximise(m.value, o.From.peak, free, b)
+	} else if o.Network {
 		best, top = searchTube(m.value, free, b)
 	} else {
 		best, top = search(m.value, free, b)

@@ -89,7 +89,7 @@ func FreeGain(r Result) float64 {
 // intoTube climbs from the best free filament with a tube added, from weak and from strong ones.
 func intoTube(m *model, at vector, top float64, free [params]bool, b bounds) (vector, float64) {
 	best := at
-	for _, x := range []float64{0, 0.5, 5, 50} {
+	for _, x := range []float64{0.3, 8} {
 		start := at
 		start[paramTube] = math.Log1p(x)
 		if p, v := maximise(m.value, start, free, b); v > top {
