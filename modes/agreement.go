@@ -68,6 +68,11 @@ func agree(fit likelihood.Result) agreement {
 	return a
 }
 
+// impossible says whether the modes disagree beyond doubt, on the persistence length or on the drag, and by much.
+func (g agreement) impossible() bool {
+	return g.modes >= 2 && (g.p < pNotThermal && g.scatter > notThermal || g.dragP < pNotThermal && g.dragScatter > notLocalDrag)
+}
+
 // spread gathers values with their standard deviations.
 type spread struct{ x, sd []float64 }
 

@@ -31,7 +31,7 @@ func (r *Result) judgeTube(in inTube, fit likelihood.Result, t tubeTheory, o Opt
 		r.flag(FlagChanging)
 	}
 	g := agree(fit)
-	if g.modes >= 2 && (g.p < pNotThermal && g.scatter > notThermal || g.dragP < pNotThermal && g.dragScatter > notLocalDrag) {
+	if g.impossible() {
 		r.Thermal = ThermalNo
 		r.flag(FlagNotThermal)
 		r.withhold("the motion is not thermal")

@@ -83,7 +83,7 @@ func (r *Result) judge(a amplitudes, fit likelihood.Result, t theory, bound bool
 		r.flag(FlagRolling)
 	}
 	g := agree(fit)
-	if g.modes >= 2 && (g.p < pNotThermal && g.scatter > notThermal || g.dragP < pNotThermal && g.dragScatter > notLocalDrag) {
+	if g.impossible() {
 		r.Thermal = ThermalNo
 		r.flag(FlagNotThermal)
 		r.withhold("the bending is not thermal")
