@@ -7,6 +7,7 @@ import (
 	"math"
 	"runtime"
 	"slices"
+	"sync"
 
 	"wend/imaging"
 	"wend/imaging/ridge"
@@ -151,12 +152,9 @@ func Measure(ctx context.Context, src trace.Source, info imaging.Info, s Setting
 	r := &Result{Version: Version, RidgeImplementation: ridge.Implementation(), Settings: s, Info: info,
 		Camera: cameraOut(conditions.Camera, factor), Optics: Optics{width, width * conditions.ResolvedWidths(), correlation}, TimesS: times(info, s)}
 	trace.QuantiseTimes(r.TimesS)
-	for i := range traced {
-		if err := ctx.Err(); err != nil {
-			return nil, err
-		}
-		traced[i].Quantise()
-		r.Filaments = append(r.Filaments, Analyse(traced[i], r.TimesS, s, r.Optics))
+	r.Filaments = analyseAll(ctx, traced, r.TimesS, s, r.Optics, workers)
+	if err := ctx.Err(); err != nil {
+		return nil, err
 	}
 	r.PictureFrame = bestFrame(r.Filaments, s)
 	if err := src.ReadFrame(r.PictureFrame, &r.Picture); err != nil {
@@ -164,6 +162,25 @@ func Measure(ctx context.Context, src trace.Source, info imaging.Info, s Setting
 	}
 	r.Warnings = append(r.Warnings, warnings(r)...)
 	return r, nil
+}
+
+// analyseAll quantises and analyses the filaments, several at a time, in their order. When ctx ends the rest is left out.
+func analyseAll(ctx context.Context, traced []trace.Filament, timesS []float64, s Settings, optics Optics, workers int) []Filament {
+	out := make([]Filament, len(traced))
+	var wait sync.WaitGroup
+	slots := make(chan struct{}, workers)
+	for i := range traced {
+		slots <- struct{}{}
+		wait.Go(func() {
+			defer func() { <-slots }()
+			if ctx.Err() == nil {
+				traced[i].Quantise()
+				out[i] = Analyse(traced[i], timesS, s, optics)
+			}
+		})
+	}
+	wait.Wait()
+	return out
 }
 
 // times gives the time of every frame up to the last one measured: the file's own where it has one
